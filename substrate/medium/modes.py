@@ -1,0 +1,65 @@
+"""Guided modes of a lossless stack: wave numbers at which it carries light along itself, and their weight in the reflection."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.optimize import brentq
+
+from substrate.medium.fresnel import POLARIZATIONS, normal_wave_number, pole_function, reflection
+from substrate.medium.stack import Layers
+
+
+@dataclass(frozen=True)
+class GuidedMode:
+    """A pole of the reflection at the real wave number q (1/nm): r = residue/(q - q_mode) nearby."""
+
+    polarization: str
+    q: float
+    index: float
+    residue: complex
+
+    @property
+    def name(self) -> str:
+        return f"{'TE' if self.polarization == 's' else 'TM'} {self.index:.5f}"
+
+
+def guided_modes(layers: Layers) -> tuple[GuidedMode, ...]:
+    """All modes between the largest index of host and base and the largest of the films; none if any layer absorbs or is metallic."""
+    index = np.array(layers.index)
+    if np.any(index.imag != 0.0):
+        return ()
+    low = max(index[0].real, index[-1].real) * layers.k0
+    high = index.real.max() * layers.k0
+    if high <= low * (1.0 + 1e-12):
+        return ()
+    phase = sum(high * d for d in layers.thickness_nm)
+    # crowded towards both ends: modes near cut-off and near the film's own index
+    x = np.linspace(0.0, 1.0, 200 + int(60 * phase / np.pi))[1:-1]
+    samples = low + (high - low) * 0.5 * (1.0 - np.cos(np.pi * x))
+    modes = []
+    for polarization in POLARIZATIONS:
+        value = _dispersion(layers, samples, polarization)
+        reference = value[np.argmax(np.abs(value))]
+        real = (value / reference).real
+        for i in np.flatnonzero(real[:-1] * real[1:] < 0.0):
+            q = brentq(lambda x: (_dispersion(layers, np.array([x]), polarization)[0] / reference).real, samples[i], samples[i + 1], xtol=1e-16 + 1e-15 * high)
+            modes.append(GuidedMode(polarization, q, q / layers.k0, _residue(layers, q, polarization, low, high)))
+    return tuple(sorted(modes, key=lambda mode: -mode.q))
+
+
+def _dispersion(layers: Layers, q, polarization: str) -> np.ndarray:
+    """The pole function with the phases of the films taken out: of constant phase between the cut-offs, so that its sign tells."""
+    value = pole_function(layers, q, polarization)
+    for n, d in zip(layers.index[1:-1], layers.thickness_nm):
+        value = value * np.exp(-1j * normal_wave_number(n * layers.k0, q).real * d)
+    return value
+
+
+def _residue(layers: Layers, q: float, polarization: str, low: float, high: float) -> complex:
+    """Mean of r (q - q_mode) on a small circle around the pole: exact but for terms of the radius to the 16th."""
+    radius = 1e-3 * min(q - low, max(high - q, 1e-3 * q))
+    circle = radius * np.exp(2j * np.pi * (np.arange(16) + 0.5) / 16)
+    r = reflection(layers, q + circle)[POLARIZATIONS.index(polarization)]
+    return complex((r * circle).mean())
