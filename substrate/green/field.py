@@ -21,7 +21,10 @@ def direct_field(k: float, points, sources, centers, dipoles, skip_nm: float) ->
     def part(start: int, stop: int) -> None:
         _kernels.direct_sum(k, points[start:stop], sources, centers, dipoles, skip_nm, out[start:stop])
 
-    share(len(points), part)
+    if len(points) * len(sources) < 50_000:  # cheaper than starting threads
+        part(0, len(points))
+    else:
+        share(len(points), part)
     return out
 
 

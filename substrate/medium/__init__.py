@@ -1,1 +1,1 @@
-
+"""WHERE light travels: materials, the stack, plane waves in it, its guided modes."""

@@ -14,13 +14,19 @@ import numpy as np
 from substrate.medium.stack import Layers
 
 POLARIZATIONS = ("s", "p")
+_GRAZING = 1e-6
 
 
 def normal_wave_number(k: complex, q: np.ndarray) -> np.ndarray:
-    """kz = sqrt(k^2 - q^2) on the sheet of waves that decay or travel away: Im kz > 0, or Im kz = 0 and Re kz >= 0. Units of k."""
+    """kz = sqrt(k^2 - q^2) on the sheet of waves that decay or travel away: Im kz > 0, or Im kz = 0 and Re kz >= 0. Units of k.
+
+    Within 1e-6 k of grazing, where up and down waves become one and the recursion 0/0, 1e-6 k is taken: an error of about 1e-12.
+    """
     kz = np.sqrt(np.asarray(k * k - q * q, dtype=complex))
     wrong = (kz.imag < 0.0) | ((kz.imag == 0.0) & (kz.real < 0.0))
-    return np.where(wrong, -kz, kz)
+    kz = np.where(wrong, -kz, kz)
+    least = _GRAZING * abs(k)
+    return np.where(np.abs(kz) < least, least, kz)
 
 
 def _admittances(layers: Layers, q, polarization: str) -> tuple[list[np.ndarray], list[np.ndarray]]:

@@ -50,10 +50,11 @@ def guided_modes(layers: Layers) -> tuple[GuidedMode, ...]:
 
 
 def _dispersion(layers: Layers, q, polarization: str) -> np.ndarray:
-    """The pole function with the phases of the films taken out: of constant phase between the cut-offs, so that its sign tells."""
+    """The pole function without the films' phases and factors kz (it is odd in each): of constant phase, so that its sign tells."""
     value = pole_function(layers, q, polarization)
     for n, d in zip(layers.index[1:-1], layers.thickness_nm):
-        value = value * np.exp(-1j * normal_wave_number(n * layers.k0, q).real * d)
+        kz = normal_wave_number(n * layers.k0, q)
+        value = value * np.exp(-1j * kz.real * d) / kz
     return value
 
 

@@ -1,1 +1,1 @@
-
+"""WHAT is seen: powers, collectors, near fields."""

@@ -19,7 +19,7 @@ from substrate.green.table import ReflectedTable
 from substrate.particle.cells import Cells
 from substrate.solve.problem import Solution
 
-NEAR_CELLS = 2.0
+NEAR_CELLS = 2.000001  # not a round number: points at exactly two cells fall on one side for good
 _SPOTS = 8  # per axis in a cell that is partly filled
 
 
@@ -89,9 +89,16 @@ def emitter_coupling(cells: Cells, filled: FilledParts, k: float, table: Reflect
 
 
 def total_field(
-    solution: Solution, filled: FilledParts, excitation: Callable[[np.ndarray], np.ndarray], points_nm
+    solution: Solution,
+    filled: FilledParts,
+    table: ReflectedTable | None,
+    excitation: Callable[[np.ndarray], np.ndarray],
+    points_nm,
 ) -> np.ndarray:
-    """Total E (n, 3) at points (n, 3) with z >= 0: excitation outside plus what the particles add; the cell's own field inside."""
+    """Total E (n, 3) at points (n, 3) with z >= 0: excitation outside plus what the particles add; the cell's own field inside.
+
+    table: reflected tensor for the heights of the points, None for a uniform surrounding.
+    """
     points = np.ascontiguousarray(np.atleast_2d(np.asarray(points_nm, dtype=float)))
     if points.shape[1] != 3 or not np.isfinite(points).all() or (points[:, 2] < 0.0).any():
         raise InputError(Problem("points_nm", points_nm, "finite points (n, 3) with z >= 0", "Fields below the surface are not offered with particles."))
@@ -106,8 +113,8 @@ def total_field(
             solution.problem.layers.k_host, outside, cells.centroid_nm, cells.centers_nm, solution.dipoles, NEAR_CELLS * cells.cell_nm
         )
         _add_near(added, outside, solution, filled)
-        if solution.problem.table is not None:
-            added += reflected_field(solution.problem.table, outside, cells.centers_nm, solution.dipoles)
+        if table is not None:
+            added += reflected_field(table, outside, cells.centers_nm, solution.dipoles)
         field[~inside] = excitation(outside) + added
     return field
 

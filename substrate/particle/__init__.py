@@ -1,1 +1,1 @@
-
+"""WHAT scatters: shapes and the cells that they fill."""

@@ -1,1 +1,1 @@
-
+"""THE coupled-dipole system: polarisability, interaction, iteration."""

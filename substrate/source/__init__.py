@@ -1,1 +1,1 @@
-
+"""WHAT excites, as E at points: plane waves and point emitters."""

@@ -1,0 +1,209 @@
+"""Which grids answer a question, and what their answers say about cells of size zero: the one place that makes error bars.
+
+A value is computed on nine grids over a 2:1 span of the cell size and extrapolated to zero by a quadratic; its bar is the larger
+of the distance between the linear and the quadratic extrapolation and two standard errors of the quadratic one. Against exact
+spheres over real stacks such bars held in 60 of 61 quantities; with three grids they failed in 20 % and are not offered. The
+solver's residual and the error of the reflected tensor's table are added.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from substrate.errors import InputError, Problem
+from substrate.quantity import Quantity
+
+GRIDS = 9
+MOST_BOX_CELLS = 6_000_000
+# Products to a residual of 1e-5 by the kind of material, and seconds of one product per box cell: for estimates only.
+_SECONDS_PER_CELL = 1.2e-6
+_BYTES_PER_CELL = 520
+
+
+@dataclass(frozen=True)
+class ProgressEvent:
+    """stage: what is being done; done: share of all the work, 0 to 1; detail: in a few words."""
+
+    stage: str
+    done: float
+    detail: str = ""
+
+
+Progress = Callable[[ProgressEvent], None]
+
+
+@dataclass(frozen=True)
+class GridPlan:
+    """Cells across the smallest particle extent, coarsest first; `extent_nm` is that extent."""
+
+    extent_nm: float
+    cells_across: tuple[float, ...]
+
+    def cell_nm(self, number: int) -> float:
+        return self.extent_nm / self.cells_across[number]
+
+    def costs(self) -> list[float]:
+        """Rough share of the work of each grid."""
+        raw = [n**3.2 for n in self.cells_across]
+        return [cost / sum(raw) for cost in raw]
+
+
+@dataclass(frozen=True)
+class Convergence:
+    """One quantity on a series of grids. fit: coefficients c of c0 + c1 h + c2 h^2, h the cell size in nm; fitted = c0."""
+
+    cell_nm: tuple[float, ...]
+    values: tuple[float, ...]
+    fitted: float
+    error: float
+    fit: tuple[float, float, float]
+
+
+@dataclass(frozen=True)
+class Estimate:
+    """What a run would cost: finest cell in nm, number of grids, cells of the finest box, occupied ones, bytes, seconds (rough)."""
+
+    cell_nm: float
+    grids: int
+    cells_in_box: int
+    occupied_cells: int
+    memory_bytes: int
+    seconds: float
+
+
+def plan_grids(particles: Sequence, layers, accuracy: float, cell_nm: float | None, quick: bool, clearance_nm: float = math.inf) -> GridPlan:
+    """Choose the grids. cell_nm fixes the finest cell; otherwise accuracy, contrast, wavelength and the clearance of emitters and spots do.
+
+    Raises InputError if the finest box would hold more than MOST_BOX_CELLS cells.
+    """
+    from substrate.medium.material import material
+    from substrate.particle.cells import reference_extent_nm
+
+    if not 0.0 < accuracy < 1.0:
+        raise InputError(Problem("accuracy", accuracy, "a relative accuracy between 0 and 1, such as 0.02"))
+    if cell_nm is not None and not 0.0 < cell_nm < math.inf:
+        raise InputError(Problem("cell_nm", cell_nm, "a length above 0"))
+    extent = reference_extent_nm(particles)
+    if cell_nm is not None:
+        finest = max(1.0, extent / cell_nm)
+    else:
+        index = max(abs(complex(material(spec).index(layers.wavelength_nm))) for spec in _materials(particles))
+        contrast = index / layers.index[0].real
+        finest = 24.0 if contrast <= 2.2 else 32.0
+        if accuracy < 0.01:
+            finest *= 1.25
+        finest = max(finest, 2.0 * contrast * layers.k_host * extent / 2.0)
+        if math.isfinite(clearance_nm) and contrast > 2.2:
+            finest = max(finest, min(48.0, 4.0 * extent / clearance_nm))
+        finest = float(math.ceil(finest))
+    _check_size(particles, extent / finest)
+    if quick:
+        return GridPlan(extent, (finest,))
+    if cell_nm is None:
+        across = sorted({round(finest * (0.5 + 0.5 * i / (GRIDS - 1))) for i in range(GRIDS)})
+    else:
+        across = [finest * (0.5 + 0.5 * i / (GRIDS - 1)) for i in range(GRIDS)]
+    return GridPlan(extent, tuple(float(n) for n in across))
+
+
+def _materials(particles: Sequence) -> set:
+    found = set()
+    for particle in particles:
+        while hasattr(particle, "around"):
+            found.add(particle.material)
+            particle = particle.around
+        found.add(particle.material)
+    return found
+
+
+def box_of(particles: Sequence) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    """Common bounding box (low, high) of all particles, nm."""
+    bounds = [particle.bounds_nm() for particle in particles]
+    low = tuple(float(min(b[0][axis] for b in bounds)) for axis in range(3))
+    high = tuple(float(max(b[1][axis] for b in bounds)) for axis in range(3))
+    return low, high
+
+
+def _box_cells(particles: Sequence, cell_nm: float) -> int:
+    low, high = box_of(particles)
+    return math.prod(math.ceil((b - a) / cell_nm - 1e-9) for a, b in zip(low, high))
+
+
+def _check_size(particles: Sequence, cell_nm: float) -> None:
+    count = _box_cells(particles, cell_nm)
+    if count > MOST_BOX_CELLS:
+        raise InputError(
+            Problem(
+                "accuracy.cell_nm",
+                round(cell_nm, 4),
+                f"cells for which the box of all particles holds at most {MOST_BOX_CELLS} of them (here {count})",
+                "Take larger cells, a lower accuracy, or particles closer together.",
+            )
+        )
+
+
+def estimate(particles: Sequence, layers, accuracy: float = 0.02, cell_nm: float | None = None, quick: bool = False) -> Estimate:
+    """Cost of a run, without meshing: box cells by the bounds, occupied cells by the share of the volume."""
+    plan = plan_grids(particles, layers, accuracy, cell_nm, quick)
+    finest = plan.extent_nm / plan.cells_across[-1]
+    boxes = [_box_cells(particles, plan.extent_nm / n) for n in plan.cells_across]
+    low, high = box_of(particles)
+    volume = math.prod(b - a for a, b in zip(low, high))
+    filled = sum(particle.volume_nm3 for particle in particles)
+    from substrate.medium.material import material
+
+    largest = max(abs(complex(material(spec).index(layers.wavelength_nm)) / layers.index[0]) for spec in _materials(particles))
+    products = 12.0 + 10.0 * largest**1.5
+    occupied = min(boxes[-1], int(boxes[-1] * min(1.0, filled / volume)))
+    return Estimate(finest, len(boxes), boxes[-1], occupied, _BYTES_PER_CELL * boxes[-1], 2.0 + products * _SECONDS_PER_CELL * sum(boxes))
+
+
+def extrapolate(cell_nm: Sequence[float], values: Sequence[float]) -> Convergence:
+    """Value at zero cell size and its bar (discretisation only), from values on a series of grids over a 2:1 span."""
+    import numpy as np
+
+    h, y = np.asarray(cell_nm, dtype=float), np.asarray(values, dtype=float)
+    weight = (h.min() / h) ** 1.5  # squared residuals weighted with 1/h^3: fine grids count more
+    unit = h / h.max()
+    quadratic, deviation = _fit(unit, y, weight, 2)
+    linear, _ = _fit(unit, y, weight, 1)
+    error = max(abs(linear[0] - quadratic[0]), 2.0 * deviation)
+    scale = 1.0 / h.max()
+    coefficients = (float(quadratic[0]), float(quadratic[1] * scale), float(quadratic[2] * scale**2))
+    return Convergence(tuple(h.tolist()), tuple(y.tolist()), float(quadratic[0]), float(error), coefficients)
+
+
+def _fit(x, y, weight, degree: int):
+    """Weighted polynomial fit; returns coefficients from the constant up and the standard error of the constant."""
+    import numpy as np
+
+    matrix = np.vander(x, degree + 1, increasing=True) * weight[:, None]
+    coefficients, *_ = np.linalg.lstsq(matrix, y * weight, rcond=None)
+    rest = y * weight - matrix @ coefficients
+    freedom = max(1, len(x) - degree - 1)
+    covariance = np.linalg.inv(matrix.T @ matrix) * (rest @ rest) / freedom
+    return coefficients, float(np.sqrt(covariance[0, 0]))
+
+
+@dataclass(frozen=True)
+class Series:
+    """All quantities of one question on its grids: values[name] has one entry a grid."""
+
+    cell_nm: tuple[float, ...]
+    values: dict[str, tuple[float, ...]]
+    residual: float
+    table_error: float
+
+    def quantity(self, name: str, unit: str, definition: str, scale: float, extra_error: float = 0.0) -> Quantity:
+        """The answer for one name. scale: size to which the solver's residual and the table's error refer (at least the value)."""
+        values = self.values[name]
+        if len(values) < GRIDS - 2:
+            return Quantity(float(values[-1]), None, unit, definition)
+        found = self.convergence(name)
+        numerical = (self.residual + self.table_error) * max(abs(scale), abs(found.fitted))
+        return Quantity(found.fitted, found.error + numerical + extra_error, unit, definition)
+
+    def convergence(self, name: str) -> Convergence:
+        return extrapolate(self.cell_nm, self.values[name])
