@@ -40,7 +40,7 @@ def read_case(path) -> Case:
     """Read a case file. Raises InputError with all its problems, or with one sentence if it cannot be read at all."""
     path = Path(path)
     try:
-        text = path.read_bytes().decode("utf-8")
+        text = path.read_bytes().decode("utf-8-sig")
     except UnicodeDecodeError as error:
         raise InputError(Problem(str(path), f"byte {error.start} that is not UTF-8", "a TOML text in UTF-8")) from None
     except OSError as error:

@@ -15,7 +15,19 @@ from substrate.run import answers
 from substrate.run.build import Sample, build
 from substrate.run.case import Case
 from substrate.run.checks import material_specs
-from substrate.run.results import FAILED, FINISHED, NOT_CONVERGED, MaterialTable, PointResult, Results, ResultsWriter, new_results, program_version, read_results
+from substrate.run.results import (
+    FAILED,
+    FINISHED,
+    MISSED,
+    NOT_CONVERGED,
+    MaterialTable,
+    PointResult,
+    Results,
+    ResultsWriter,
+    new_results,
+    program_version,
+    read_results,
+)
 from substrate.run.series import Point
 from substrate.run.sketch import sketch
 
@@ -130,7 +142,7 @@ def run_point(point: Point, progress: _Progress | None = None) -> PointResult:
     if status == FINISHED and accuracy["cell_nm"] is None:
         missed = answers.missed_accuracy(answer.quantities, accuracy["relative"])
         if missed:
-            answer.warnings.append(f"{MISSED} {100.0 * accuracy['relative']:g} % is not reached by " + ", ".join(missed))
+            answer.warnings.append(f"{MISSED} of {100.0 * accuracy['relative']:g} % is not reached by " + ", ".join(missed))
     return PointResult(
         label=point.label,
         parameters=point.parameters,
@@ -142,9 +154,6 @@ def run_point(point: Point, progress: _Progress | None = None) -> PointResult:
         quantities=answer.quantities,
         arrays=answer.arrays,
     )
-
-
-MISSED = "the accuracy asked for:"  # how the warning about missed accuracy begins
 
 
 class _Answer:
@@ -174,7 +183,8 @@ class _Answer:
 def _ask(tables: Mapping, answer: _Answer, progress: _Progress | None) -> None:
     sample = build(tables)
     asked = {ask["what"] for ask in tables["ask"]}
-    light = sample.light is not None and bool(asked & {"cross sections", "near field", "far field"})
+    far = "far field" in asked and bool(sample.particles)
+    light = sample.light is not None and (far or bool(asked & {"cross sections", "near field"}))
     emitters = sample.emitters if asked & {"emission", "far field"} else ()
     if progress is not None:
         progress.questions = max(1, light + len(emitters))
@@ -221,7 +231,7 @@ def _options(tables: Mapping, progress) -> dict:
 def _add_arrays(tables: Mapping, sample: Sample, wavelength_nm: float, found, units: Mapping, pattern_unit: str, prefix: str, answer: _Answer) -> None:
     """The pattern, where it was asked for, and the convergence of one answer."""
     for ask in tables["ask"]:
-        if ask["what"] == "far field":
+        if ask["what"] == "far field" and (sample.particles or pattern_unit == "1/sr"):  # without a particle no light is scattered
             lossless = sample.stack.at(wavelength_nm).base_is_lossless
             answer.arrays.update(answers.pattern(found, ask["count"], lossless, pattern_unit, prefix))
     if found.convergence:

@@ -46,6 +46,7 @@ class Reading:
             else:
                 self.unknown(name, known, variants, word, where)
         sure = variants is None or word in variants.own
+        misspelt = [name for name in written if name not in known]
         complete = {}
         for name, key in known.items():
             inner = f"{where}.{name}" if where else name
@@ -53,7 +54,8 @@ class Reading:
                 complete[name] = read[name]
             elif key.default is REQUIRED:
                 complete[name] = None
-                if sure or name in variants.common or name == variants.selector:
+                certain = sure or name in variants.common or name == variants.selector
+                if certain and not any(nearest(other, (name,)) for other in misspelt):
                     self.refuse(inner, REQUIRED, allowed_words(key))
             else:
                 complete[name] = self.default(key, inner, (*path, name))

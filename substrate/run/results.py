@@ -29,6 +29,7 @@ from substrate.quantity import Quantity
 
 FINISHED, NOT_CONVERGED, FAILED = "finished", "not converged", "failed"
 STATUSES = (FINISHED, NOT_CONVERGED, FAILED)
+MISSED = "the accuracy asked for"  # how a point's warning begins if its bars are wider
 _UNFINISHED_GROUP = "writing"  # a point in the making; renamed to its number when it is complete
 
 

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 
 class _Required:
@@ -96,7 +96,7 @@ STACK = {
 # Shapes: the fields of the classes of particle/shape.py.
 PLACE = {
     "gap_nm": Key("number", None, low=0.0),
-    "center_xy_nm": Key("position", (0.0, 0.0), size=2),
+    "center_xy_nm": Key("position", None, size=2),
     "center_nm": Key("position", None, size=3),
 }
 SHAPE_KEYS: dict[str, dict[str, Key]] = {
@@ -123,7 +123,7 @@ EMITTER = {
 COLLECTOR = {
     "name": Key("name", None, series=False),
     "na": Key("number", None, 0.0, 4.5, above=True),
-    "side": SIDE,
+    "side": Key("word", None, choices=("above", "below"), series=False),
     "polar_deg": Key("interval", None, 0.0, 180.0, series=False),
     "azimuth_deg": Key("interval", None, -360.0, 720.0, series=False),
 }
