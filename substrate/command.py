@@ -8,6 +8,7 @@ import sys
 import time
 from pathlib import Path
 
+from substrate import __version__
 from substrate.errors import InputError, SubstrateError
 
 GOOD, WRONG, NOT_REACHED, INTERRUPTED = 0, 1, 2, 3
@@ -48,7 +49,7 @@ def _parser() -> argparse.ArgumentParser:
     parser = argparse.ArgumentParser(
         prog="substrate", description=_ABOUT, epilog=_EXIT, formatter_class=argparse.RawDescriptionHelpFormatter
     )
-    parser.add_argument("--version", action=_Version, help="print the version and exit")
+    parser.add_argument("--version", action="version", version=f"substrate {__version__}")
     commands = parser.add_subparsers(required=True, metavar="COMMAND")
 
     run = commands.add_parser("run", help="compute a case: table on screen, results file, figures, report")
@@ -77,19 +78,6 @@ def _parser() -> argparse.ArgumentParser:
     materials.add_argument("--out", metavar="FILE", type=Path, help="the plot (default: results/materials/<name>.png)")
     materials.set_defaults(command=_materials)
     return parser
-
-
-class _Version(argparse.Action):
-    """Looks the version up only when it is asked for."""
-
-    def __init__(self, option_strings, dest, **options):
-        super().__init__(option_strings, dest, nargs=0, **options)
-
-    def __call__(self, parser, namespace, values, option_string=None):
-        from importlib.metadata import version
-
-        print(f"substrate {version('substrate')}")
-        parser.exit()
 
 
 # ---- run

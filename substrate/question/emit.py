@@ -114,9 +114,10 @@ def emit(
     table_error = 0.0 if layers.is_uniform else 1e-8
     residual = max(report.residual for report in reports)
     series = Series(tuple(sizes), {name: tuple(row[name] for row in rows) for name in rows[0]}, residual, table_error)
-    warnings = cautions(stack, particles) + _distance_cautions(distance, sizes[-1], particles, layers)
+    doubts = _distance_cautions(distance, sizes[-1], particles, layers)
+    warnings = cautions(stack, particles) + doubts
     method = f"coupled dipoles, {len(sizes)} grid{'s' if len(sizes) > 1 else ''}, finest cell {sizes[-1]:.3g} nm"
-    out = _answer(series, emitter, windows, layers, sources, reports, warnings, method, None)
+    out = _answer(series, emitter, windows, layers, sources, reports, warnings, method, None, resolved=not doubts)
     if failure is not None:
         raise NotConverged(str(failure), best=out, report=failure.report)
     return out
@@ -225,12 +226,12 @@ def _distance_cautions(distance: float, cell: float, particles: Sequence, layers
     if distance < 1.5 * cell:
         return [
             f"the emitter lies {distance:.3g} nm from a particle, less than 1.5 of the finest cells ({cell:.3g} nm): "
-            "its rates are not resolved and their bars do not bound the error"
+            "its rates are not resolved, and their bars do not bound the error"
         ]
     if metal and distance < 8.0 * cell:
         return [
             f"the emitter lies {distance:.3g} nm ({distance / cell:.1f} finest cells) from an absorbing particle: below 8 cells the staircase "
-            "of the surface over-absorbs, and total, particle and yield may be off by more than their bars (radiated parts are safe)"
+            "of the surface over-absorbs; the values are those of the finest grid, their bars span it and the extrapolated ones"
         ]
     return []
 
@@ -241,7 +242,7 @@ def _specs(particles: Sequence) -> set:
     return _materials(particles)
 
 
-def _answer(series, emitter, windows, layers, sources, reports, warnings, method, exact_error) -> Emission:
+def _answer(series, emitter, windows, layers, sources, reports, warnings, method, exact_error, resolved=True) -> Emission:
     average = emitter.average()
     total_size = abs(series.values["total"][-1])
 
@@ -249,10 +250,7 @@ def _answer(series, emitter, windows, layers, sources, reports, warnings, method
         if exact_error is not None:
             value = series.values[name][-1]
             return Quantity(value, exact_error * max(abs(value), 1e-3 * total_size), "1", text)
-        found = series.quantity(name, "1", text, total_size)
-        if found.error is not None and not any(series.values[name]):
-            return Quantity(0.0, 0.0, "1", text)
-        return found
+        return series.quantity(name, "1", text, total_size, resolved)
 
     named = {name: quantity(name, f"{_DEFINITIONS[name]}; {average}") for name in _CHANNELS}
     closure_error = exact_error if exact_error is not None else series.residual + series.table_error

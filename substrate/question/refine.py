@@ -196,14 +196,24 @@ class Series:
     residual: float
     table_error: float
 
-    def quantity(self, name: str, unit: str, definition: str, scale: float, extra_error: float = 0.0) -> Quantity:
-        """The answer for one name. scale: size to which the solver's residual and the table's error refer (at least the value)."""
+    def quantity(self, name: str, unit: str, definition: str, scale: float, resolved: bool = True) -> Quantity:
+        """The answer for one name.
+
+        scale: size to which the solver's residual and the table's error refer (at least the value).  resolved=False: the grids do
+        not resolve the question (an emitter a few cells from a metal), extrapolation overshoots; the finest grid's value is
+        taken, and its distance from the extrapolated one added to the bar.
+        """
         values = self.values[name]
+        if not any(values):  # nothing there on any grid: a lossless particle absorbs nothing
+            return Quantity(0.0, None if len(values) < GRIDS - 2 else 0.0, unit, definition)
         if len(values) < GRIDS - 2:
             return Quantity(float(values[-1]), None, unit, definition)
         found = self.convergence(name)
         numerical = (self.residual + self.table_error) * max(abs(scale), abs(found.fitted))
-        return Quantity(found.fitted, found.error + numerical + extra_error, unit, definition)
+        if not resolved:
+            finest = float(values[-1])
+            return Quantity(finest, found.error + abs(found.fitted - finest) + numerical, unit, definition)
+        return Quantity(found.fitted, found.error + numerical, unit, definition)
 
     def convergence(self, name: str) -> Convergence:
         return extrapolate(self.cell_nm, self.values[name])

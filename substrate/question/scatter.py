@@ -242,9 +242,6 @@ def _spot_text(point) -> str:
 def _answer(series, windows, spots, layers, waves, finest, filled, reports, warnings, plan) -> Scattering:
     scale = abs(series.values["work"][-1])
     named = {name: series.quantity(name, "nm^2", text, scale) for name, text in _DEFINITIONS.items() if name != "balance"}
-    for name in ("down", "guided", "stack"):
-        if not any(series.values[name]) and named[name].error is not None:
-            named[name] = Quantity(0.0, 0.0, "nm^2", _DEFINITIONS[name])
     balance = Quantity(series.values["balance"][-1], series.residual + series.table_error, "1", _DEFINITIONS["balance"])
     collected = {
         name: series.quantity(f"collected {name}", "nm^2", f"power scattered into {c.describe()} over the incident irradiance", 0.0)

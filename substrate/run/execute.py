@@ -10,6 +10,7 @@ from pathlib import Path
 
 import numpy as np
 
+from substrate import __version__
 from substrate.errors import NotConverged, SubstrateError
 from substrate.run import answers
 from substrate.run.build import Sample, build
@@ -25,7 +26,6 @@ from substrate.run.results import (
     Results,
     ResultsWriter,
     new_results,
-    program_version,
     read_results,
 )
 from substrate.run.series import Point
@@ -75,7 +75,7 @@ def choose_place(case: Case, folder) -> Place:
             return Place(here, file, 0)
         if file.is_file():
             old = _readable(file)
-            if old and not old.complete and (old.case_text, old.resolved, old.version) == (case.text, resolved, program_version()):
+            if old and not old.complete and (old.case_text, old.resolved, old.version) == (case.text, resolved, __version__):
                 return Place(here, file, len(old.points))
         number += 1
 
@@ -93,8 +93,8 @@ def execute(case: Case, place: Place, listener: Listener | None = None) -> Path:
     A point that fails is recorded with its sentence and the others go on. KeyboardInterrupt leaves the finished points in the file.
     """
     points = case.points()
-    if place.resumed:
-        writer = ResultsWriter(place.results, resume=True)
+    if place.results.exists():
+        writer = ResultsWriter(place.results)
     else:
         place.folder.mkdir(parents=True, exist_ok=True)
         head = new_results(case.title, case.text, case.tables, materials_used(case), sketch(build(points[0].tables)), len(points))

@@ -34,7 +34,8 @@ class Reading:
         """One table with every default filled in, its keys in the order of the schema."""
         if not isinstance(written, dict):
             self.refuse(where, written, f"a table [{where}]", f"Write [{where}] with single brackets." if isinstance(written, list) else "")
-            return {}
+            names = keys.keys(None) if isinstance(keys, Variants) else keys
+            return {name: [] if key.kind == "tables" else None for name, key in names.items()}
         variants = keys if isinstance(keys, Variants) else None
         word = written.get(variants.selector) if variants else None
         known = variants.keys(word) if variants else keys

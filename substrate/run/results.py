@@ -24,6 +24,7 @@ from pathlib import Path
 import h5py
 import numpy as np
 
+from substrate import __version__
 from substrate.errors import InputError, Problem
 from substrate.quantity import Quantity
 
@@ -117,16 +118,14 @@ class Results:
 class ResultsWriter:
     """Writes a results file point by point; between two points the file is closed and complete.
 
-    A new file appears under its name only once its head is whole. `resume=True` adds to a file that is there already.
-    Raises InputError if a new file would overwrite an old one.
+    head: Results without points, for a new file, which appears under its name only once its head is whole; None adds to the file
+    that is there already. Raises InputError if a new file would overwrite an old one.
     """
 
-    def __init__(self, path, head: Results, *, resume: bool = False):
+    def __init__(self, path, head: Results | None = None):
         self.path = Path(path)
-        if resume:
-            with h5py.File(self.path, "r+") as file:
-                if _UNFINISHED_GROUP in file:  # left behind by an interrupted write
-                    del file[_UNFINISHED_GROUP]
+        if head is None:
+            with h5py.File(self.path, "r") as file:
                 self.count = len(file["points"])
             return
         if self.path.exists():
@@ -158,17 +157,7 @@ class ResultsWriter:
 def new_results(title: str, case_text: str, resolved: Mapping, materials, sketch: Sketch | None, planned_points: int) -> Results:
     """The head of a results file of this program version, made now, with no points yet."""
     created = datetime.now(timezone.utc).isoformat(timespec="seconds")
-    return Results(title, program_version(), created, case_text, resolved, materials, sketch, (), planned_points)
-
-
-def program_version() -> str:
-    """Version of the installed program."""
-    from importlib.metadata import PackageNotFoundError, version
-
-    try:
-        return version("substrate")
-    except PackageNotFoundError:
-        return "not installed"
+    return Results(title, __version__, created, case_text, resolved, materials, sketch, (), planned_points)
 
 
 # ---- writing
