@@ -222,7 +222,7 @@ def _check(options) -> int:
     print(f"{len(points)} point{'s' if len(points) > 1 else ''}, {total.solves} solution{'s' if total.solves != 1 else ''} of coupled cells")
     if total.solves:
         print(f"grids: {total.grids} a solution, finest cell {total.cell_nm:.3g} nm, {total.occupied_cells} occupied cells of {total.cells_in_box}")
-        print(f"memory about {total.memory_bytes / 1e6:.0f} MB, time about {duration(total.seconds)} on this kind of estimate (a factor of 3 either way)")
+        print(f"memory about {total.memory_bytes / 1e6:.0f} MB, time about {duration(total.seconds)} (rough)")
     for words in total.cautions:
         print(f"caution: {words}")
     print(f"sketch: {path}")
@@ -246,10 +246,12 @@ def _show(options) -> int:
 
 
 def _report(options) -> int:
-    from substrate.picture.report import write_report
     from substrate.run.results import read_results
 
     results = read_results(options.results)
+
+    from substrate.picture.report import write_report
+
     path = options.out or options.results.with_name("report.html")
     write_report(results, path)
     print(f"written: {path}")

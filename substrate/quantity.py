@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from html import escape
 
 
 @dataclass(frozen=True)
@@ -46,3 +47,19 @@ def format_with_error(value: float, error: float) -> str:
     power = 10.0**exponent
     digits = min(12, max(0, 1 - math.floor(math.log10(error / power))))
     return f"({value / power:.{digits}f} ± {error / power:.{digits}f})e{exponent}"
+
+
+def text_table(rows: dict[str, Quantity]) -> str:
+    """Names, values with bars and units, one a line."""
+    width = max((len(name) for name in rows), default=0)
+    return "\n".join(f"{name:<{width}}  {quantity}" for name, quantity in rows.items())
+
+
+def html_table(rows: dict[str, Quantity], notes: tuple[str, ...] = ()) -> str:
+    """The same for a notebook, with each number's definition, and notes below."""
+    cells = "".join(
+        f"<tr><td>{escape(name)}</td><td>{escape(str(quantity))}</td><td>{escape(quantity.definition)}</td></tr>"
+        for name, quantity in rows.items()
+    )
+    below = "".join(f"<p>{escape(note)}</p>" for note in notes)
+    return f"<table><tr><th>quantity</th><th>value</th><th>definition</th></tr>{cells}</table>{below}"

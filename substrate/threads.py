@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
+from functools import cache
 
 
 def thread_count() -> int:
@@ -16,6 +17,11 @@ def thread_count() -> int:
     return max(1, min(cores, 8))
 
 
+@cache
+def _pool() -> ThreadPoolExecutor:
+    return ThreadPoolExecutor(thread_count(), thread_name_prefix="substrate")
+
+
 def share(count: int, work: Callable[[int, int], None]) -> None:
     """Call work(start, stop) on slices that cover range(count), one slice a thread; errors of a thread are raised here."""
     threads = min(thread_count(), count)
@@ -23,7 +29,6 @@ def share(count: int, work: Callable[[int, int], None]) -> None:
         work(0, count)
         return
     bounds = [count * i // threads for i in range(threads + 1)]
-    with ThreadPoolExecutor(threads) as pool:
-        futures = [pool.submit(work, low, high) for low, high in zip(bounds[:-1], bounds[1:])]
-        for future in futures:
-            future.result()
+    futures = [_pool().submit(work, low, high) for low, high in zip(bounds[:-1], bounds[1:])]
+    for future in futures:
+        future.result()

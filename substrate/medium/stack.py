@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, field
+from html import escape
 
 from substrate.constants import DOUBTFUL_FILM_NM, TWO_PI
 from substrate.errors import InputError, Problem
@@ -59,6 +60,11 @@ class Stack:
             )
         index = (complex(index[0].real), *index[1:])
         return Layers(float(wavelength_nm), index, tuple(float(film.thickness_nm) for film in self.films))
+
+    def _repr_html_(self) -> str:
+        rows = [("host", self.host, ""), *(("film", f.material, f"{f.thickness_nm:g} nm") for f in self.films), ("base", self.base, "")]
+        cells = "".join(f"<tr><td>{kind}</td><td>{escape(str(name))}</td><td>{thickness}</td></tr>" for kind, name, thickness in rows)
+        return f"<table>{cells}</table>"
 
     def cautions(self) -> tuple[str, ...]:
         """Sentences about films whose bulk constants are doubtful."""

@@ -16,7 +16,7 @@ from substrate.medium.stack import Layers, Stack
 from substrate.observe.collector import Collector
 from substrate.observe.near_field import FilledParts, emitter_coupling
 from substrate.observe.power import delivered, guided, pattern, radiated_down, radiated_up
-from substrate.quantity import Quantity
+from substrate.quantity import Quantity, html_table, text_table
 from substrate.question.grids import Grid, cautions, grids, tell, viewing_table
 from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, plan_grids
 from substrate.question.scatter import _windows, collected_power, stack_share
@@ -60,6 +60,18 @@ class Emission:
     reports: tuple[SolveReport, ...]
     _layers: Layers = field(repr=False)
     _sources: tuple[tuple[DipoleSet, float], ...] = field(repr=False)
+
+    def quantities(self) -> dict[str, Quantity]:
+        """All numbers by name."""
+        named = {name: getattr(self, name) for name in (*_DEFINITIONS, "quantum_yield", "lifetime_ratio", "lifetime_ns")}
+        collected = {f"collected, {name}": quantity for name, quantity in self.collected.items()}
+        return {name: quantity for name, quantity in (named | collected).items() if quantity is not None}
+
+    def __str__(self) -> str:
+        return "\n".join([text_table(self.quantities()), self.method, *self.warnings])
+
+    def _repr_html_(self) -> str:
+        return html_table(self.quantities(), (self.method, *self.warnings))
 
     def pattern(self, polar_deg, azimuth_deg) -> np.ndarray:
         """Power per steradian over the host power of the emitter at directions (n,), averaged over orientations. Finest grid."""

@@ -14,7 +14,7 @@ from substrate.medium.stack import Layers, Stack
 from substrate.observe.collector import Collector
 from substrate.observe.near_field import FilledParts, total_field
 from substrate.observe.power import guided, pattern, radiated_down, radiated_up
-from substrate.quantity import Quantity
+from substrate.quantity import Quantity, html_table, text_table
 from substrate.question.grids import Grid, cautions, grids, tell, viewing_table
 from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, plan_grids
 from substrate.solve.krylov import SolveReport
@@ -58,6 +58,18 @@ class Scattering:
     _waves: tuple[StackWave, ...] = field(repr=False)
     _solutions: tuple[Solution, ...] = field(repr=False)
     _filled: FilledParts | None = field(repr=False)
+
+    def quantities(self) -> dict[str, Quantity]:
+        """All numbers by name."""
+        named = {name: getattr(self, name) for name in _DEFINITIONS}
+        collected = {f"collected, {name}": quantity for name, quantity in self.collected.items()}
+        return named | collected | {f"spot {i + 1}": quantity for i, quantity in enumerate(self.spots)}
+
+    def __str__(self) -> str:
+        return "\n".join([text_table(self.quantities()), self.method, *self.warnings])
+
+    def _repr_html_(self) -> str:
+        return html_table(self.quantities(), (self.method, *self.warnings))
 
     def fields(self, points_nm) -> np.ndarray:
         """Total E at points (n, 3), z >= 0, for unit incident amplitude: (waves, n, 3), one entry, two for unpolarized light. Finest grid."""

@@ -52,21 +52,28 @@ def _unit(quantity: Quantity) -> str:
 
 
 def _series(results: Results, most_rows: int | None) -> str:
-    points, cut = results.points, 0
-    if most_rows is not None and len(points) > most_rows:
-        cut = len(points) - most_rows
-        head = most_rows - most_rows // 4
-        points = points[:head] + points[len(results.points) - (most_rows - head) :]
+    """One row a point; quantities that are exactly zero everywhere are named below instead of filling a column."""
+    points = results.points
     parameters = _parameter_columns(points)
-    quantities = _quantity_columns(points)
     if any(point.status != FINISHED for point in points):
-        parameters.append(["", "status", *(point.status for point in points)])
-    blocks = ["\n".join(_rows(parameters + block)) for block in _blocks(parameters, quantities)]
-    text = "\n\n".join(blocks)
-    if cut:
-        text += f"\n({cut} points between the first {head} and the last {most_rows - head} are left out here)"
-    messages = dict.fromkeys(f"{point.status}: {point.message}" for point in results.points if point.message)
-    return "\n".join([text, *messages])
+        parameters.append(["status", "", *(point.status for point in points)])
+    quantities = _quantity_columns(points)
+    zero = [column[0] for column in quantities if set(column[2:]) == {"0"}]
+    quantities = [column for column in quantities if column[0] not in zero]
+    blocks = [_shortened(_rows(parameters + block), most_rows) for block in _blocks(parameters, quantities)]
+    text = "\n\n".join("\n".join(rows) for rows in blocks)
+    notes = ["zero at every point: " + ", ".join(zero)] if zero else []
+    notes += dict.fromkeys(f"{point.status}: {point.message}" for point in points if point.message)
+    return "\n".join([text, *notes])
+
+
+def _shortened(rows: list[str], most: int | None) -> list[str]:
+    """The rows of a table with two lines of header, cut in the middle to `most` points."""
+    count = len(rows) - 2
+    if most is None or count <= most:
+        return rows
+    tail = most // 4
+    return [*rows[: 2 + most - tail], f"... {count - most} more points ...", *rows[len(rows) - tail :]]
 
 
 def _parameter_columns(points: Sequence[PointResult]) -> list[list[str]]:
@@ -76,8 +83,7 @@ def _parameter_columns(points: Sequence[PointResult]) -> list[list[str]]:
     columns = []
     for key, name in zip(keys, short):
         title = key if short.count(name) > 1 else name
-        table, _, field = title.rpartition(".")
-        columns.append([table, field, *(_value(point.parameters.get(key)) for point in points)])
+        columns.append([title, "", *(_value(point.parameters.get(key)) for point in points)])
     return columns
 
 
@@ -127,8 +133,7 @@ def _wide(column: Sequence[str]) -> int:
 
 def _rows(columns: list[list[str]]) -> list[str]:
     widths = [_wide(column) for column in columns]
-    rows = [_GAP.join(f"{cell:>{wide}}" for cell, wide in zip(row, widths)).rstrip() for row in zip(*columns)]
-    return rows if rows[0].strip() else rows[1:]
+    return [_GAP.join(f"{cell:>{wide}}" for cell, wide in zip(row, widths)).rstrip() for row in zip(*columns)]
 
 
 def cautions(results: Results) -> list[str]:

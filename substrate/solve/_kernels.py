@@ -52,6 +52,23 @@ def fill_reflected(quadrant, scalars, row_of_square, levels):
 
 
 @compiled
+def place(work, index, dipoles):
+    """work (mx, 3, ny, nz) <- zero, then dipoles (n, 3) at cell indices (n, 3)."""
+    work[:] = 0.0
+    for a in range(index.shape[0]):
+        for c in range(3):
+            work[index[a, 0], c, index[a, 1], index[a, 2]] = dipoles[a, c]
+
+
+@compiled
+def collect(work, index, out):
+    """out (n, 3) <- work (mx, 3, ny, nz) at cell indices (n, 3)."""
+    for a in range(index.shape[0]):
+        for c in range(3):
+            out[a, c] = work[index[a, 0], c, index[a, 1], index[a, 2]]
+
+
+@compiled
 def multiply_direct(plane, direct, sign_x):
     """plane (3, my, mz) <- direct (6, my/2+1, mz/2+1) times plane, in Fourier space at one kx."""
     my, mz = plane.shape[1], plane.shape[2]

@@ -75,12 +75,9 @@ class Interaction:
 
     def apply(self, dipoles: np.ndarray) -> np.ndarray:
         """Fields (n, 3) of dipoles (n, 3)."""
-        i, j, k = self.cells.index.T
         nx, ny, nz = self.cells.shape
-        work = self._work
-        work[:] = 0.0
-        work[i, :, j, k] = dipoles
-        spectrum = fft.fft(work, axis=0, workers=thread_count(), overwrite_x=True)
+        _kernels.place(self._work, self.cells.index, dipoles)
+        spectrum = fft.fft(self._work, axis=0, workers=thread_count(), overwrite_x=True)
         mx, my, mz = self.padded
 
         def planes(start: int, stop: int) -> None:
@@ -96,7 +93,9 @@ class Interaction:
 
         share(mx, planes)
         field = fft.ifft(spectrum, axis=0, workers=thread_count(), overwrite_x=True)
-        return field[i, :, j, k]
+        out = np.empty(dipoles.shape, dtype=complex)
+        _kernels.collect(field, self.cells.index, out)
+        return out
 
 
 def _padded_length(n: int) -> int:
