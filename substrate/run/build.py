@@ -68,12 +68,14 @@ def _frozen(value: object) -> object:
     return tuple(_frozen(item) for item in value) if isinstance(value, list) else value
 
 
-def _shape(table: Mapping):
+def _shape(table: Mapping, material: object = None):
+    """A shape of its table; material: of the union to which it belongs."""
     arguments = _fields(table, "shape", "around", "parts")
+    arguments.setdefault("material", material)
     if table.get("around"):
         arguments["around"] = _shape(table["around"])
     if table.get("parts"):
-        arguments["parts"] = tuple(_shape(part) for part in table["parts"])
+        arguments["parts"] = tuple(_shape(part, arguments["material"]) for part in table["parts"])
     return SHAPES[table["shape"]](**arguments)
 
 

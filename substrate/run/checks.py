@@ -34,10 +34,10 @@ def check(tables: Mapping, axes: Sequence[Axis], folder: Path) -> list[Problem]:
 
 def complete(tables: dict, folder: Path) -> None:
     """Fill in the defaults that depend on other keys, in place."""
-    for particle in tables["particle"]:
-        if particle["center_nm"] is None:
-            particle["gap_nm"] = 0.0 if particle["gap_nm"] is None else particle["gap_nm"]
-            particle["center_xy_nm"] = particle["center_xy_nm"] or [0.0, 0.0]
+    for _, body in _placed(tables):
+        if body["center_nm"] is None:
+            body["gap_nm"] = 0.0 if body["gap_nm"] is None else body["gap_nm"]
+            body["center_xy_nm"] = body["center_xy_nm"] or [0.0, 0.0]
     for number, collector in enumerate(tables["collector"]):
         collector["name"] = collector["name"] or _collector_name(tables, number)
         if collector["side"] is None:
@@ -64,14 +64,23 @@ def _numbers(value: object) -> list[float]:
     return [item for item in _values(value) if isinstance(item, float)]
 
 
-def _particles(tables: Mapping) -> Iterator[Problem]:
+def _placed(tables: Mapping) -> Iterator[tuple[str, dict]]:
+    """Every body that has a place of its own: particles, and the parts of unions."""
     for number, particle in enumerate(tables["particle"], 1):
-        where = f"particle[{number}]"
-        if particle["center_nm"] is not None:
+        parts = particle.get("parts")
+        if isinstance(parts, list):
+            yield from ((f"particle[{number}].parts[{i}]", part) for i, part in enumerate(parts, 1) if "gap_nm" in part)
+        elif "gap_nm" in particle:
+            yield f"particle[{number}]", particle
+
+
+def _particles(tables: Mapping) -> Iterator[Problem]:
+    for where, body in _placed(tables):
+        if body["center_nm"] is not None:
             for key in ("gap_nm", "center_xy_nm"):
-                if particle[key] is not None:
-                    yield Problem(f"{where}.{key}", particle[key], f"either {key} or center_nm", "Leave one of the two out.")
-        for gap in _numbers(particle["gap_nm"]):
+                if body[key] is not None:
+                    yield Problem(f"{where}.{key}", body[key], f"either {key} or center_nm", "Leave one of the two out.")
+        for gap in _numbers(body["gap_nm"]):
             if 0.0 < gap < SMALLEST_GAP_NM:
                 allowed = f"0 (it touches) or at least {SMALLEST_GAP_NM:g} nm"
                 yield Problem(f"{where}.gap_nm", gap, allowed, "In narrower gaps electrons tunnel and bulk optical constants do not hold.")
@@ -188,10 +197,13 @@ def _material_places(tables: Mapping) -> Iterator[tuple[str, dict, str]]:
 
 
 def _particle_places(where: str, particle: Mapping) -> Iterator[tuple[str, dict, str]]:
-    if "material" in particle:
+    if particle.get("material") is not None:
         yield f"{where}.material", particle, "material"
     if isinstance(particle.get("around"), dict):
         yield from _particle_places(f"{where}.around", particle["around"])
+    for number, part in enumerate(particle.get("parts") or (), 1):
+        if isinstance(part, dict):
+            yield from _particle_places(f"{where}.parts[{number}]", part)
 
 
 def _located(spec: object, folder: Path) -> object:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 
 from substrate.errors import Problem, nearest
 from substrate.run.schema import REQUIRED, Key, Variants
@@ -33,7 +34,8 @@ class Reading:
     def table(self, written: object, keys: Mapping[str, Key] | Variants, where: str = "", path: tuple = ()) -> dict:
         """One table with every default filled in, its keys in the order of the schema."""
         if not isinstance(written, dict):
-            self.refuse(where, written, f"a table [{where}]", f"Write [{where}] with single brackets." if isinstance(written, list) else "")
+            brackets = f"Write [{where}] with single brackets." if isinstance(written, list) and len(path) == 1 else ""
+            self.refuse(where, written, "a table", brackets)
             names = keys.keys(None) if isinstance(keys, Variants) else keys
             return {name: [] if key.kind == "tables" else None for name, key in names.items()}
         variants = keys if isinstance(keys, Variants) else None
@@ -71,7 +73,7 @@ class Reading:
     def tables(self, written: object, keys, where: str, path: tuple) -> list[dict]:
         """A list of tables; in messages the first one has the number 1."""
         if not isinstance(written, list):
-            advice = f"Write [[{where}]] with double brackets." if isinstance(written, dict) and "." not in where else ""
+            advice = f"Write [[{where}]] with double brackets." if isinstance(written, dict) and len(path) == 1 else ""
             self.refuse(where, written, "a list of tables", advice)
             return []
         return [self.table(item, keys, f"{where}[{i + 1}]", (*path, i)) for i, item in enumerate(written)]
@@ -82,8 +84,8 @@ class Reading:
             return self.table(written, key.keys, where, path)
         if key.kind == "tables":
             return self.tables(written, key.keys, where, path)
-        if key.kind == "position":
-            return self.position(written, key, where, path)
+        if key.kind == "numbers":
+            return self.numbers(written, key, where, path)
         if key.series and _is_series(written, key):
             return self.series(written, key, where, path)
         return self.single(written, key, where)
@@ -96,13 +98,13 @@ class Reading:
             self.refuse(where, written, refused.allowed, refused.advice)
             return written
 
-    def position(self, written: object, key: Key, where: str, path: tuple) -> object:
-        """A point as a list of coordinates, each of which may be a series."""
+    def numbers(self, written: object, key: Key, where: str, path: tuple) -> object:
+        """A point or sizes as a list of numbers along x, y, z, each of which may be a series."""
         names = _COMPONENTS[: key.size]
         if not isinstance(written, list) or len(written) != key.size:
-            self.refuse(where, written, f"[{', '.join(names)}] in nm")
+            self.refuse(where, written, allowed_words(key))
             return written
-        number = Key("number", low=key.low, high=key.high)
+        number = replace(key, kind="number")
         return [self.value(item, number, f"{where}.{name}", (*path, i)) for i, (name, item) in enumerate(zip(names, written))]
 
     def series(self, written: object, key: Key, where: str, path: tuple) -> object:
@@ -328,7 +330,7 @@ def allowed_words(key: Key) -> str:
         "flag": "true or false",
         "material": "a built-in material's name, a refractive index above 0, a complex index as a text \"1.5+0.1i\", or the name of a table file",
         "vector": f"a list of {key.size} numbers {limits}".strip(),
-        "position": f"[{', '.join(_COMPONENTS[: key.size])}] in nm",
+        "numbers": f"[{', '.join(_COMPONENTS[: key.size])}] in nm" + (f", each {limits}" if limits else ""),
         "interval": f"[low, high] with low < high, {limits}",
         "counts": f"two whole numbers {limits}",
         "points": "a list of points [[x, y, z], ...] in nm with z from 0",

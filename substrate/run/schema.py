@@ -23,7 +23,8 @@ REQUIRED = _Required()
 class Key:
     """kind: name of its reader.  default: REQUIRED, None or a value.  low, high: limits, excluded where `above`, `below` say so.
 
-    choices: the words of a "word".  size: numbers in a "vector".  keys: those of a nested table.  series: may it be a list or range?
+    choices: the words of a "word".  size: of a "vector" and of "numbers", which may
+    be series one by one.  keys: those of a nested table.  series: may it be a list or range?
     """
 
     kind: str
@@ -93,16 +94,39 @@ STACK = {
     "base": Key("material", "glass"),
 }
 
-# Shapes: the fields of the classes of particle/shape.py.
+# Shapes: the fields of the classes of particle/primitives.py and composite.py.
 PLACE = {
     "gap_nm": Key("number", None, low=0.0),
-    "center_xy_nm": Key("position", None, size=2),
-    "center_nm": Key("position", None, size=3),
+    "center_xy_nm": Key("numbers", None, size=2),
+    "center_nm": Key("numbers", None, size=3),
 }
-SHAPE_KEYS: dict[str, dict[str, Key]] = {
+SIZES = Key("numbers", low=0.0, above=True, size=3)
+RADIUS = length(0.0, above=False)
+CONVEX: dict[str, dict[str, Key]] = {
     "sphere": {"diameter_nm": length()},
+    "ellipsoid": {"diameters_nm": SIZES, "azimuth_deg": angle(0.0), "tilt_deg": angle(0.0)},
+    "box": {"size_nm": SIZES, "edge_radius_nm": RADIUS, "azimuth_deg": angle(0.0)},
+    "disc": {"diameter_nm": length(), "height_nm": length(), "rim_radius_nm": RADIUS},
+    "rod": {"diameter_nm": length(), "length_nm": length(), "azimuth_deg": angle(0.0), "tilt_deg": angle(0.0)},
+    "cone": {
+        "base_diameter_nm": length(),
+        "height_nm": length(),
+        "tip_radius_nm": length(),
+        "points": Key("word", "up", choices=("up", "down"), series=False),
+    },
 }
-PARTICLE = Variants("shape", {"material": Key("material"), **PLACE}, SHAPE_KEYS)
+CORE_SHAPES = dict(CONVEX)
+CORE = Variants("shape", {"material": Key("material")}, CORE_SHAPES)  # its place is that of the shell
+CORE_SHAPES["shell"] = {"around": Key("table", keys=CORE), "thickness_nm": length()}
+PART = Variants("shape", {"material": Key("material", None), **PLACE}, CONVEX)  # without a material: that of the union
+PARTICLE = Variants(
+    "shape",
+    {"material": Key("material")},
+    {
+        **{word: {**keys, **PLACE} for word, keys in CORE_SHAPES.items()},
+        "union": {"parts": Key("tables", keys=PART)},  # each part has its own place
+    },
+)
 
 LIGHT = {
     "kind": Key("word", "plane wave", choices=("plane wave",), series=False),
@@ -113,7 +137,7 @@ LIGHT = {
     "side": SIDE,
 }
 EMITTER = {
-    "position_nm": Key("position", size=3),
+    "position_nm": Key("numbers", size=3),
     "orientation": Key("orientation", "vertical", choices=("vertical", "horizontal", "isotropic", "x", "y", "z")),
     "kind": Key("word", "electric", choices=("electric",), series=False),
     "wavelength_nm": WAVELENGTH,

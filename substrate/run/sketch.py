@@ -41,11 +41,11 @@ def index_text(index: complex) -> str:
 
 
 def outlines(particle, number: int = 1) -> list[dict]:
-    """The cut of a particle by the xz plane through its middle, as closed lines; of a shell the core's too."""
-    found = [{"name": f"{type(particle).__name__.lower()} {number}, {_name(particle.material)}", **_outline(particle)}]
-    if hasattr(particle, "around"):
-        found += outlines(particle.around, number)
-    return found
+    """The cut of a particle by the xz plane through its middle, as closed lines; of a shell its core's too, of a union each part's."""
+    if hasattr(particle, "parts"):
+        return [line for part in particle.parts for line in outlines(part, number)]
+    found = [{"name": f"{particle.word} {number}, {_name(particle.material)}", **_outline(particle)}]
+    return found + outlines(particle.core, number) if hasattr(particle, "core") else found
 
 
 def _outline(particle) -> dict:
