@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import os
 import sys
+import textwrap
 import time
 from pathlib import Path
 
@@ -13,6 +14,7 @@ from substrate.errors import InputError, SubstrateError
 
 GOOD, WRONG, NOT_REACHED, INTERRUPTED = 0, 1, 2, 3
 _SHOWN_ROWS = 40
+_SCREEN = 100  # columns
 _QUIET_SECONDS = 3.0  # of a run before it shows its progress
 
 _ABOUT = """\
@@ -262,11 +264,11 @@ def _materials(options) -> int:
     from substrate.medium.material import material, material_names
 
     if options.name is None:
-        names = material_names()
-        wide = max(map(len, names))
-        for name in names:
-            found = material(name)
-            print(f"{name:<{wide}}  {_range_text(found):>12}  {found.citation}")
+        rows = [(found.name, _range_text(found), found.citation) for found in map(material, material_names())]
+        name, edges = (max(len(row[i]) for row in rows) for i in range(2))
+        for row in rows:
+            source = textwrap.shorten(row[2], _SCREEN - name - edges - 4, placeholder=" ...")
+            print(f"{row[0]:<{name}}  {row[1]:<{edges}}  {source}")
         return GOOD
     found = material(options.name)
     print(f"{found.name}: {_range_text(found)}\nsource: {found.citation}\nconditions: {found.conditions}")
@@ -281,7 +283,7 @@ def _materials(options) -> int:
 
 
 def _range_text(found) -> str:
-    return "any wavelength" if found.range_nm is None else f"{found.range_nm[0]:g} to {found.range_nm[1]:g} nm"
+    return "any wavelength" if found.range_nm is None else f"{found.range_nm[0]:.6g} to {found.range_nm[1]:.6g} nm"
 
 
 # ---- words on the screen

@@ -75,14 +75,14 @@ def cautions(stack: Stack, particles: Sequence) -> list[str]:
     return found
 
 
-def tell(progress: Progress | None, grid: Grid, share_from: float = 0.0, share_to: float = 1.0):
-    """A listener for the iteration that reports through `progress`; share_from..share_to is its part of the grid's work."""
+def tell(progress: Progress | None, grid: Grid, tolerance: float, share_from: float, share_to: float):
+    """A listener for the iteration down to `tolerance`; share_from..share_to is its part of the grid's work."""
     if progress is None:
         return None
     width = grid.done_after - grid.done_before
 
     def on_step(products: int, residual: float) -> None:
-        part = min(1.0, max(0.0, np.log(max(residual, 1e-12)) / np.log(1e-5)))
+        part = min(1.0, max(0.0, np.log(max(residual, 1e-12)) / np.log(tolerance)))
         done = grid.done_before + width * (share_from + (share_to - share_from) * part)
         progress(ProgressEvent("solving", done, f"grid {grid.number + 1}: {products} products, residual {residual:.1e}"))
 

@@ -39,12 +39,15 @@ def _one_point(point: PointResult) -> str:
 
 
 def number_text(quantity: Quantity) -> str:
-    """Value and bar without the unit."""
-    if quantity.error is None:
-        return f"{quantity.value:.5g}"
-    if quantity.value == 0.0 and quantity.error == 0.0:
-        return "0"
-    return format_with_error(quantity.value, quantity.error)
+    """Value and bar without the unit; a bar beyond the seventh digit of its value is told by its size only."""
+    value, error = quantity.value, quantity.error
+    if error is None:
+        return f"{value:.5g}"
+    if value == 0.0:
+        return "0" if error == 0.0 else f"0 ± {error:.0e}"
+    if error < 1e-6 * abs(value):
+        return f"{value:.7g} ± {error:.0e}"
+    return format_with_error(value, error)
 
 
 def _unit(quantity: Quantity) -> str:
@@ -58,7 +61,7 @@ def _series(results: Results, most_rows: int | None) -> str:
     if any(point.status != FINISHED for point in points):
         parameters.append(["status", "", *(point.status for point in points)])
     quantities = _quantity_columns(points)
-    zero = [column[0] for column in quantities if set(column[2:]) == {"0"}]
+    zero = [column[0] for column in quantities if all(cell.split()[0] == "0" for cell in column[2:])]
     quantities = [column for column in quantities if column[0] not in zero]
     blocks = [_shortened(_rows(parameters + block), most_rows) for block in _blocks(parameters, quantities)]
     text = "\n\n".join("\n".join(rows) for rows in blocks)

@@ -119,3 +119,49 @@ def multiply_both(plane, direct, reflected, sign_x):
                 plane[0, j, w] = dxx * u + dxy * v - dxz * t + reflected[0, row, w] * x + rxy * y + rxz * z
                 plane[1, j, w] = dxy * u + dyy * v - dyz * t + rxy * x + reflected[1, row, w] * y + ryz * z
                 plane[2, j, w] = -dxz * u - dyz * v + dzz * t - rxz * x - ryz * y + reflected[2, row, w] * z
+
+
+@compiled
+def bilinear(a, b):
+    """sum a b over two (n, 3) arrays, without conjugation."""
+    total = 0j
+    for i in range(a.shape[0]):
+        for c in range(a.shape[1]):
+            total += a[i, c] * b[i, c]
+    return total
+
+
+@compiled
+def square_norm(a):
+    """sum |a|^2 of an (n, 3) array."""
+    total = 0.0
+    for i in range(a.shape[0]):
+        for c in range(a.shape[1]):
+            total += a[i, c].real * a[i, c].real + a[i, c].imag * a[i, c].imag
+    return total
+
+
+@compiled
+def advance(step, x, residual, direction, a_direction):
+    """x += step direction, residual -= step a_direction; returns |residual|^2."""
+    total = 0.0
+    for i in range(x.shape[0]):
+        for c in range(x.shape[1]):
+            x[i, c] += step * direction[i, c]
+            value = residual[i, c] - step * a_direction[i, c]
+            residual[i, c] = value
+            total += value.real * value.real + value.imag * value.imag
+    return total
+
+
+@compiled
+def turn(ratio, residual, a_residual, direction, a_direction):
+    """direction = residual + ratio direction, and the like for their products; returns a_direction . a_direction without conjugation."""
+    total = 0j
+    for i in range(direction.shape[0]):
+        for c in range(direction.shape[1]):
+            direction[i, c] = residual[i, c] + ratio * direction[i, c]
+            value = a_residual[i, c] + ratio * a_direction[i, c]
+            a_direction[i, c] = value
+            total += value * value
+    return total

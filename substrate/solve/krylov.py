@@ -12,6 +12,7 @@ from time import perf_counter
 import numpy as np
 
 from substrate.errors import NotConverged
+from substrate.solve._kernels import advance, bilinear, square_norm, turn
 
 
 @dataclass(frozen=True)
@@ -44,7 +45,7 @@ def cocr(
     if the tolerance is not met within most_products, if the iteration stagnates, or if numbers stop being finite.
     """
     started = perf_counter()
-    size = np.linalg.norm(right)
+    size = np.sqrt(square_norm(right))
     x = np.zeros_like(right) if guess is None else guess.astype(complex)
     if size == 0.0:
         return np.zeros_like(right), SolveReport(0.0, tolerance, 0, perf_counter() - started, right.size)
@@ -53,31 +54,27 @@ def cocr(
     if guess is not None:
         residual -= apply(x)
         products += 1
-    best, best_norm, best_at, reason = x.copy(), np.linalg.norm(residual) / size, 0, ""
+    best, best_norm, best_at, reason = x.copy(), np.sqrt(square_norm(residual)) / size, 0, ""
     a_residual = apply(residual)
     products += 1
     direction, a_direction = residual.copy(), a_residual.copy()
-    rho = np.vdot(residual.conj(), a_residual)
+    rho, length = bilinear(residual, a_residual), bilinear(a_direction, a_direction)
     norm = best_norm
     while norm > tolerance:
         if products >= most_products:
             reason = f"{products} products were spent"
             break
-        length = np.vdot(a_direction.conj(), a_direction)
         if not (np.isfinite(rho) and np.isfinite(length)):
             reason = "the numbers stopped being finite"
             break
         if rho == 0.0 or length == 0.0:
             reason = "the iteration broke down (a vector came out orthogonal to itself)"
             break
-        step = rho / length
-        x += step * direction
-        residual -= step * a_direction
-        norm = np.linalg.norm(residual) / size
+        norm = np.sqrt(advance(rho / length, x, residual, direction, a_direction)) / size
         if norm < best_norm:
             if norm < 0.97 * best_norm:
                 best_at = products
-            best_norm, best = norm, x.copy()
+            best_norm, best[:] = norm, x
         elif products - best_at > 400:
             reason = f"no progress in 400 products at a residual of {best_norm:.1e}"
             break
@@ -85,11 +82,9 @@ def cocr(
             on_step(products, float(norm))
         a_residual = apply(residual)
         products += 1
-        rho, previous = np.vdot(residual.conj(), a_residual), rho
-        ratio = rho / previous
-        direction = residual + ratio * direction
-        a_direction = a_residual + ratio * a_direction
-    final = float(np.linalg.norm(right - apply(best)) / size)
+        rho, previous = bilinear(residual, a_residual), rho
+        length = turn(rho / previous, residual, a_residual, direction, a_direction)
+    final = float(np.sqrt(square_norm(right - apply(best))) / size)
     report = SolveReport(final, tolerance, products + 1, perf_counter() - started, right.size)
     if reason or not report.converged:
         reason = reason or "rounding has separated the iteration's residual from the true one"

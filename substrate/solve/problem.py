@@ -15,7 +15,6 @@ from substrate.solve.interaction import Interaction
 from substrate.solve.krylov import SolveReport, cocr
 from substrate.solve.polarizability import Polarizability, polarizability
 
-TOLERANCE = 1e-5
 MOST_PRODUCTS = 1500
 
 
@@ -60,11 +59,11 @@ class Problem:
     def solve(
         self,
         excitation: np.ndarray,
-        tolerance: float = TOLERANCE,
+        tolerance: float,
         most_products: int = MOST_PRODUCTS,
         on_step: Callable[[int, float], None] | None = None,
     ) -> Solution:
-        """Dipoles for an excitation (n, 3) at the cell centres. NotConverged carries the Solution of the best vector as `best`."""
+        """Dipoles for an excitation (n, 3) at the cell centres, to a relative residual of `tolerance`. NotConverged carries the Solution of the best vector as `best`."""
         root = self.polarizability.root
 
         def scaled(y: np.ndarray) -> np.ndarray:

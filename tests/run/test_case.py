@@ -207,7 +207,7 @@ def test_a_file_is_kept_verbatim(tmp_path):
 
 
 def test_table_files_are_looked_up_beside_the_case(tmp_path):
-    (tmp_path / "mine.txt").write_text("# made up for this test\n500 1.5 0.0\n700 1.6 0.0\n", encoding="utf-8")
+    (tmp_path / "mine.txt").write_text("# made up for this test\nwavelength_nm, n, k\n500 1.5 0.0\n700 1.6 0.0\n", encoding="utf-8")
     case = parse_case(GOOD.replace('material = "gold"\n', 'material = "mine.txt"\n'), tmp_path / "case.toml")
     assert Path(case.tables["particle"][0]["material"]) == tmp_path / "mine.txt"
     assert "particle[1].material" in problems(GOOD.replace('material = "gold"\n', 'material = "mine.txt"\n'), "elsewhere/case.toml")
