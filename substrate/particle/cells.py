@@ -175,50 +175,72 @@ def _rim(low: np.ndarray, high: np.ndarray, nine_missed: np.ndarray) -> tuple[np
 
 def _quadrature(body: Particle, centres: np.ndarray, h: float) -> tuple[np.ndarray, np.ndarray]:
     """Share of the body in cells at these centres, and its first moment in cells."""
-    u = 0.5 * _NODES
-    x = np.broadcast_to((centres[:, 0, None] + h * u)[:, :, None], (len(centres), len(u), len(u)))
-    v = np.broadcast_to(u, x.shape)
-    weight = np.broadcast_to(0.25 * np.multiply.outer(_WEIGHTS, _WEIGHTS), x.shape)
-    y_middle = centres[:, 1, None, None]
-    found = body.intervals(x, y_middle + h * v)
-    if len(found) == 1:
-        missed = found[0][0] > found[0][1]
-        cut = missed.any(axis=2) & ~missed.all(axis=2)
-        if cut.any():
-            v, weight = v.copy(), weight.copy()
-            v[cut], weight[cut] = _fitted_nodes(body, x[cut][:, 0], np.broadcast_to(y_middle, cut.shape + (1,))[cut][:, 0], h, ~missed[cut])
-            found = body.intervals(x, y_middle + h * v)
-            weight[cut] *= (0.5 * _WEIGHTS)[np.nonzero(cut)[1]][:, None]
-    z = centres[:, 2, None, None]
-    pieces = [(np.clip((low - z) / h, -0.5, 0.5), np.clip((high - z) / h, -0.5, 0.5)) for low, high in found]
+    n = len(_NODES)
+    u, weight_u = np.tile(0.5 * _NODES, (len(centres), 1)), np.tile(0.5 * _WEIGHTS, (len(centres), 1))
+    v, weight_v = np.tile(0.5 * _NODES, (len(centres), n, 1)), np.tile(0.5 * _WEIGHTS, (len(centres), n, 1))
+    x0, y0, z0 = (centres[:, axis, None, None] for axis in range(3))
+    found = body.intervals(x0 + h * u[:, :, None], y0 + h * v)
+    if len(found) == 1 and (found[0][0] > found[0][1]).any():
+        _fit_along_x(body, x0[:, 0], y0, h, found[0], u, weight_u)
+        low, high = body.intervals(x0 + h * u[:, :, None], y0 + h * v)[0]
+        _fit_along_y(body, x0[:, 0] + h * u, y0[:, 0], h, low > high, v, weight_v)
+        found = body.intervals(x0 + h * u[:, :, None], y0 + h * v)
+    pieces = [(np.clip((low - z0) / h, -0.5, 0.5), np.clip((high - z0) / h, -0.5, 0.5)) for low, high in found]
     length, moment_z = _joined(pieces)
+    weight = weight_u[:, :, None] * weight_v
     weighted = weight * length
-    moment = np.stack(
-        [(weighted * u[:, None]).sum(axis=(1, 2)), (weighted * v).sum(axis=(1, 2)), (weight * moment_z).sum(axis=(1, 2))], axis=1
-    )
-    return weighted.sum(axis=(1, 2)), moment
+    moments = (weighted * u[:, :, None], weighted * v, weight * moment_z)
+    return weighted.sum(axis=(1, 2)), np.stack([m.sum(axis=(1, 2)) for m in moments], axis=1)
 
 
-def _fitted_nodes(body: Particle, x, y_middle, h: float, hit: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Nodes and weights along y, in cells, for lines that a convex body meets on part of the cell only: (n, 24) each.
+def _fit_along_x(body: Particle, x0, y0, h: float, found, u, weight_u) -> None:
+    """Move the x nodes of cells that a convex body reaches over a part of x only into that part."""
+    hit = ~(found[0] > found[1]).all(axis=2)
+    cut = np.flatnonzero(hit.any(axis=1) & ~hit.all(axis=1))
+    if not len(cut):
+        return
+    base = 0.5 * np.concatenate([[-1.0], _NODES, [1.0]])
 
-    The ends of that part are found by bisection; y = middle + half sin t then takes the square-root ends of a round body out.
-    """
-    rows = np.arange(len(x))
-    u = np.concatenate([[-0.5], 0.5 * _NODES, [0.5]])
+    def reached(middle):
+        low, high = body.intervals((x0[cut] + h * middle[:, None])[:, :, None], y0[cut] + h * base)[0]
+        return (low <= high).any(axis=(1, 2))
+
+    u[cut], weight_u[cut] = _between(*_ends(hit[cut], reached))
+
+
+def _fit_along_y(body: Particle, x, y0, h: float, missed, v, weight_v) -> None:
+    """Move the y nodes of lines that a convex body meets on a part of the cell only into that part. x: (cells, 24), nm."""
+    cut = missed.any(axis=2) & ~missed.all(axis=2)
+    if not cut.any():
+        return
+    across, middle_y = x[cut], np.broadcast_to(y0, cut.shape)[cut]
+
+    def reached(middle):
+        low, high = body.intervals(across, middle_y + h * middle)[0]
+        return low <= high
+
+    v[cut], weight_v[cut] = _between(*_ends(~missed[cut], reached))
+
+
+def _ends(hit: np.ndarray, reached) -> tuple[np.ndarray, np.ndarray]:
+    """Ends of the part of [-1/2, 1/2] on which `reached` holds, by bisection from the nodes next to them; hit: (n, 24)."""
+    u = 0.5 * np.concatenate([[-1.0], _NODES, [1.0]])
     first, last = hit.argmax(axis=1) + 1, hit.shape[1] - hit[:, ::-1].argmax(axis=1)
     ends = []
     for inner, outer in ((u[first], u[first - 1]), (u[last], u[last + 1])):
         for _ in range(44):
             middle = 0.5 * (inner + outer)
-            low, high = body.intervals(x, y_middle + h * middle)[0]
-            inside = low <= high
+            inside = reached(middle)
             inner, outer = np.where(inside, middle, inner), np.where(inside, outer, middle)
         ends.append(inner)
-    middle, half = 0.5 * (ends[0] + ends[1]), 0.5 * (ends[1] - ends[0])
+    return tuple(ends)
+
+
+def _between(low: np.ndarray, high: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """Nodes and weights between two ends, by x = middle + half sin t, which takes the square-root ends of a round body out."""
+    middle, half = 0.5 * (low + high)[:, None], 0.5 * (high - low)[:, None]
     angle = 0.5 * np.pi * _NODES
-    nodes = middle[rows, None] + half[rows, None] * np.sin(angle)
-    return nodes, half[rows, None] * 0.5 * np.pi * np.cos(angle) * _WEIGHTS
+    return middle + half * np.sin(angle), half * 0.5 * np.pi * np.cos(angle) * _WEIGHTS
 
 
 def _joined(pieces: list) -> tuple[np.ndarray, np.ndarray]:
