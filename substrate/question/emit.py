@@ -112,7 +112,7 @@ def emit(
     plan = plan_grids(particles, layers, accuracy, cell_nm, quick, distance)
     rows, sizes, reports, sources, failure = [], [], [], (), None
     for grid in grids(particles, layers, plan, progress):
-        solved, failure = _solve_moments(grid, particles, emitter, plan.tolerance, progress)
+        solved, failure = _solve_moments(grid, particles, emitter, progress)
         reports += [solution.report for solution, *_ in solved]
         rows.append(_observe(solved, emitter, layers, windows))
         sizes.append(grid.cells.cell_nm)
@@ -187,7 +187,7 @@ def _bare_total(layers: Layers, scalars: np.ndarray, moment) -> float:
     return 1.0 + 6.0 * np.pi / layers.k_host**3 * float(own.imag)
 
 
-def _solve_moments(grid: Grid, particles: Sequence, emitter: Emitter, tolerance: float, progress: Progress | None):
+def _solve_moments(grid: Grid, particles: Sequence, emitter: Emitter, progress: Progress | None):
     """Solutions for each moment of the average: (solution, moment, weight, coupling), and the failure if there was one."""
     layers = grid.problem.layers
     filled = FilledParts(grid.cells, particles)
@@ -196,9 +196,9 @@ def _solve_moments(grid: Grid, particles: Sequence, emitter: Emitter, tolerance:
     moments = emitter.moments()
     solved, failure = [], None
     for number, (moment, weight) in enumerate(moments):
-        listener = tell(progress, grid, tolerance, number / len(moments), (number + 1) / len(moments))
+        listener = tell(progress, grid, number / len(moments), (number + 1) / len(moments))
         try:
-            solution = grid.problem.solve(coupling @ np.array(moment, dtype=complex), tolerance, on_step=listener)
+            solution = grid.problem.solve(coupling @ np.array(moment, dtype=complex), on_step=listener)
         except NotConverged as stop:
             solution, failure = stop.best, stop
         solved.append((solution, moment, weight, coupling))

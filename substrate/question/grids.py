@@ -36,7 +36,7 @@ def grids(particles: Sequence, layers: Layers, plan: GridPlan, progress: Progres
             progress(ProgressEvent("meshing", done, f"grid {number + 1} of {len(plan.cells_across)}"))
         cells = mesh(particles, plan.cell_nm(number))
         eps = [complex(material(spec).index(layers.wavelength_nm)) ** 2 / layers.index[0] ** 2 for spec in cells.materials]
-        yield Grid(number, cells, Problem(cells, layers, np.array(eps), table), done, done + cost)
+        yield Grid(number, cells, Problem(cells, layers, np.array(eps), table, plan.tolerance), done, done + cost)
         done += cost
 
 
@@ -75,14 +75,14 @@ def cautions(stack: Stack, particles: Sequence) -> list[str]:
     return found
 
 
-def tell(progress: Progress | None, grid: Grid, tolerance: float, share_from: float, share_to: float):
-    """A listener for the iteration down to `tolerance`; share_from..share_to is its part of the grid's work."""
+def tell(progress: Progress | None, grid: Grid, share_from: float, share_to: float):
+    """A listener for the iteration; share_from..share_to is its part of the grid's work."""
     if progress is None:
         return None
     width = grid.done_after - grid.done_before
 
     def on_step(products: int, residual: float) -> None:
-        part = min(1.0, max(0.0, np.log(max(residual, 1e-12)) / np.log(tolerance)))
+        part = min(1.0, max(0.0, np.log(max(residual, 1e-12)) / np.log(grid.problem.tolerance)))
         done = grid.done_before + width * (share_from + (share_to - share_from) * part)
         progress(ProgressEvent("solving", done, f"grid {grid.number + 1}: {products} products, residual {residual:.1e}"))
 

@@ -136,9 +136,9 @@ def scatter(
         filled = FilledParts(grid.cells, particles)
         solutions = []
         for number, wave in enumerate(waves):
-            listener = tell(progress, grid, plan.tolerance, number / len(waves), (number + 1) / len(waves))
+            listener = tell(progress, grid, number / len(waves), (number + 1) / len(waves))
             try:
-                solution = grid.problem.solve(wave.field(grid.cells.centers_nm), plan.tolerance, on_step=listener)
+                solution = grid.problem.solve(wave.field(grid.cells.centers_nm), on_step=listener)
             except NotConverged as stop:
                 solution, failure = stop.best, stop
             solutions.append(solution)

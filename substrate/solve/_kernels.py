@@ -6,7 +6,7 @@ from substrate._kernels import compiled
 
 
 @compiled
-def fill_direct(octant, lateral, difference, cell):
+def fill_direct(octant, lateral, difference):
     """octant (nx, 6, ny, nz): xx yy zz xy xz yz of lateral I + difference R_hat R_hat, tables over squared index distance."""
     nx, ny, nz = octant.shape[0], octant.shape[2], octant.shape[3]
     for i in range(nx):
@@ -119,6 +119,17 @@ def multiply_both(plane, direct, reflected, sign_x):
                 plane[0, j, w] = dxx * u + dxy * v - dxz * t + reflected[0, row, w] * x + rxy * y + rxz * z
                 plane[1, j, w] = dxy * u + dyy * v - dyz * t + rxy * x + reflected[1, row, w] * y + ryz * z
                 plane[2, j, w] = -dxz * u - dyz * v + dzz * t - rxz * x - ryz * y + reflected[2, row, w] * z
+
+
+@compiled
+def scale(vectors, along, across, normal, out):
+    """out (n, 3) = along on the part of vectors along the normal (n, 3), across on the rest."""
+    for a in range(vectors.shape[0]):
+        x, y, z = vectors[a, 0], vectors[a, 1], vectors[a, 2]
+        step = (along[a] - across[a]) * (normal[a, 0] * x + normal[a, 1] * y + normal[a, 2] * z)
+        out[a, 0] = across[a] * x + step * normal[a, 0]
+        out[a, 1] = across[a] * y + step * normal[a, 1]
+        out[a, 2] = across[a] * z + step * normal[a, 2]
 
 
 @compiled

@@ -9,11 +9,13 @@ eps_n passes infinity (a nearly full metal cell).
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from substrate.green.free_space import filtered_self_term
 from substrate.particle.cells import Cells
+from substrate.solve._kernels import scale
 
 
 @dataclass(frozen=True)
@@ -33,13 +35,20 @@ class Polarizability:
 
     def root(self, vectors: np.ndarray) -> np.ndarray:
         """alpha^(1/2) acting on vectors (n, 3): the symmetric scaling of the system."""
-        along, across = self._split(vectors)
-        return np.sqrt(self.along)[:, None] * along + np.sqrt(self.across)[:, None] * across
+        return self._apply(vectors, *self._roots)
+
+    @cached_property
+    def _roots(self) -> tuple[np.ndarray, np.ndarray]:
+        return np.sqrt(self.along), np.sqrt(self.across)
+
+    def _apply(self, vectors: np.ndarray, along: np.ndarray, across: np.ndarray) -> np.ndarray:
+        out = np.empty(vectors.shape, dtype=complex)
+        scale(vectors, along, across, self.normal, out)
+        return out
 
     def inner_field(self, dipoles: np.ndarray) -> np.ndarray:
         """Field inside of the cells, p/(V chi), (n, 3)."""
-        along, across = self._split(dipoles)
-        return (self.inverse_chi_along[:, None] * along + self.inverse_chi_across[:, None] * across) / self.cell_volume
+        return self._apply(dipoles, self.inverse_chi_along, self.inverse_chi_across) / self.cell_volume
 
     def absorbed(self, dipoles: np.ndarray, k: float) -> float:
         """Ohmic loss as a cross section in nm^2 for unit incident amplitude."""

@@ -29,12 +29,12 @@ def terms_for(x: float, y: float) -> int:
     return max(enough_terms(y), int((42.0 + 3.0 * float(mp.log(60.0 / fall + 1.0))) / fall) + 20)
 
 
-def rates(index, radius_nm: float, distance_nm: float, wavelength_nm: float, host: float = 1.0, terms: int | None = None) -> SphereRates:
+def rates(index, radius_nm: float, distance_nm: float, wavelength_nm: float, host: float = 1.0) -> SphereRates:
     """A dipole at distance_nm > 0 from the surface of a sphere; wavelength in vacuum, host real."""
     with mp.workdps(DIGITS):
         k = 2 * mp.pi * host / wavelength_nm
         x, y = k * radius_nm, k * (mp.mpf(radius_nm) + distance_nm)
-        count = terms or terms_for(x, y)
+        count = terms_for(x, y)
         a, b = coefficients(mp.mpmathify(index) / host, x, count)
         f = radial_functions(y, count)
         total = [mp.mpf(1), mp.mpf(1)]

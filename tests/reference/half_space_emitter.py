@@ -69,10 +69,10 @@ def total_rates(stack: PlaneStack, height_nm: float, depth: float = 0.3, beyond:
         end = back + 52 / kz2 + 1
         points = [mp.mpc(0), mp.mpc(sag, -sag)]
         points += [mp.mpc(sag + (back - 2 * sag) * j / 5, -sag) for j in range(1, 6)] + [mp.mpc(back)]
-        step = mp.mpf(beyond)
         while points[-1].real < end:
+            # panels stay short against the distance of a lossy film's far poles
+            step = min(max(mp.mpf(0.4), points[-1].real / 6), 12 / kz2)
             points.append(mp.mpc(min(end, points[-1].real + step)))
-            step = min(2 * step, 12 / kz2)
         return PlaneRates(*_integrals(stack, kz2, points))
 
 
