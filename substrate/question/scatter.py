@@ -123,7 +123,7 @@ def scatter(
     """
     layers = stack.at(light.wavelength_nm)
     waves = light.waves(stack)
-    windows = _windows(collectors, layers)
+    windows = collector_windows(collectors, layers)
     spots = _checked_spots(spots_nm)
     if not particles:
         return _bare(layers, waves, windows, spots)
@@ -166,7 +166,7 @@ def scatter(
     return out
 
 
-def _windows(collectors: Sequence[Collector], layers: Layers) -> dict[str, tuple[Collector, tuple, tuple]]:
+def collector_windows(collectors: Sequence[Collector], layers: Layers) -> dict[str, tuple[Collector, tuple, tuple]]:
     windows = {}
     for collector in collectors:
         if collector.name in windows:

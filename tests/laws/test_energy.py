@@ -24,7 +24,7 @@ WAVELENGTH = 600.0
 def test_lossless_stack_gives_back_all_that_the_particle_does_not_keep(stack, side):
     """work = absorbed + up + down + guided, the last by residues: nothing is found by difference."""
     body = [sb.Ellipsoid(material=1.8 + 0.2j, diameters_nm=(90.0, 60.0, 60.0), gap_nm=5.0)]
-    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 35.0, 20.0, "p", side), quick=True, cell_nm=6.0, accuracy=2e-4)
+    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 35.0, 20.0, "p", side), quick=True, cell_nm=6.0, accuracy=1e-3)
     parts = out.absorbed.value + out.up.value + out.down.value + out.guided.value
     assert abs(parts / out.work.value - 1.0) < 3e-5  # residual of the iteration, 1e-5
     assert abs(out.balance.value) < 3e-5
@@ -37,7 +37,7 @@ def test_power_into_lossy_films_by_flux_and_by_difference(film):
     """The flux of the spectrum through z = 0 against what the balance leaves: catches signs and branches that other tests pass."""
     stack = sb.Stack(1.0, [sb.Film(film, 45.0)], 1.5)
     body = [sb.Sphere(material=1.7 + 0.1j, diameter_nm=36.0, gap_nm=12.0)]
-    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 40.0, 0.0, "p"), quick=True, cell_nm=6.0, accuracy=2e-4)
+    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 40.0, 0.0, "p"), quick=True, cell_nm=6.0, accuracy=1e-3)
     layers = stack.at(WAVELENGTH)
     solution = out._solutions[0]
     dipoles = DipoleSet(solution.problem.cells.centers_nm, solution.dipoles)
@@ -77,7 +77,7 @@ def test_collectors_add_up_to_the_half_spaces():
         sb.Collector("below far", polar_deg=(90.0, 130.0)),
         sb.Collector("below near", polar_deg=(130.0, 180.0)),
     ]
-    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 50.0, 0.0, "p"), windows, quick=True, cell_nm=8.0, accuracy=2e-4)
+    out = sb.scatter(stack, body, sb.PlaneWave(WAVELENGTH, 50.0, 0.0, "p"), windows, quick=True, cell_nm=8.0, accuracy=1e-3)
     got = {name: quantity.value for name, quantity in out.collected.items()}
     for parts, whole in ((("cone", "ring"), out.up), (("front", "back"), out.up), (("below",), out.down), (("below far", "below near"), out.down)):
         assert abs(sum(got[name] for name in parts) / whole.value - 1.0) < 1e-8  # quadrature of smooth patterns
@@ -86,7 +86,7 @@ def test_collectors_add_up_to_the_half_spaces():
 def test_pattern_integrates_to_the_power():
     """dC/dOmega on a product grid of directions, summed by Gauss and equal steps, against the powers up and down."""
     stack = sb.Stack(1.0, [], 1.5)
-    out = sb.scatter(stack, [sb.Sphere(material=2.0, diameter_nm=80.0)], sb.PlaneWave(WAVELENGTH, 50.0), quick=True, cell_nm=8.0, accuracy=2e-4)
+    out = sb.scatter(stack, [sb.Sphere(material=2.0, diameter_nm=80.0)], sb.PlaneWave(WAVELENGTH, 50.0), quick=True, cell_nm=8.0, accuracy=1e-3)
     nodes, weights = np.polynomial.legendre.leggauss(60)
     azimuth = np.arange(48) * 7.5
     critical = 180.0 - np.degrees(np.arcsin(1.0 / 1.5))

@@ -22,7 +22,7 @@ def test_absorption_of_small_spheroids(ratio, axis):
     length, width = (8.0, 4.0) if ratio == 2.0 else (4.0, 8.0)
     body = sb.Ellipsoid(material=INDEX, diameters_nm=(length, width, width), gap_nm=10.0)
     wave = sb.PlaneWave(WAVELENGTH, 0.0, 0.0, "p" if axis == "along" else "s")
-    out = sb.scatter(sb.Stack(1.0, [], 1.0), [body], wave, quick=True, cell_nm=0.25, accuracy=2e-4)
+    out = sb.scatter(sb.Stack(1.0, [], 1.0), [body], wave, quick=True, cell_nm=0.25, accuracy=1e-3)
     factor = depolarisation_factors(ratio)[0 if axis == "along" else 1]
     volume = math.pi / 6.0 * length * width**2
     assert out.absorbed.value == pytest.approx(k * spheroid_polarizability(EPS, volume, factor).imag, rel=0.007)
@@ -38,7 +38,7 @@ def test_small_sphere_and_its_image(angle, polarization):
     stack, base = sb.Stack(1.0, [], 3.5), 3.5**2
     body = [sb.Sphere(material=INDEX, diameter_nm=4.0, gap_nm=2.0)]
     wave = sb.PlaneWave(WAVELENGTH, angle, 0.0, polarization)
-    options = {"quick": True, "cell_nm": 0.25, "accuracy": 2e-4}
+    options = {"quick": True, "cell_nm": 0.25, "accuracy": 1e-3}
     ratio = sb.scatter(stack, body, wave, **options).absorbed.value / sb.scatter(sb.Stack(1.0, [], 1.0), body, wave, **options).absorbed.value
     own = sphere_polarizability(EPS, 2.0)
     perpendicular, parallel = sphere_over_half_space(EPS, base, 2.0, 4.0)

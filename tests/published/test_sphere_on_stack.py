@@ -1,6 +1,6 @@
 """Spheres over real stacks: the program against an independent multipole solution.
 
-Quick runs with 16 cells across and a residual of 1e-5 (accuracy=2e-4). Every tolerance is about 1.3 times the error measured there, in %:
+Quick runs with 16 cells across and a residual of 1e-5 (accuracy=1e-3). Every tolerance is about 1.3 times the error measured there, in %:
 what it holds is the known error of the cells, and anything new is caught. The silver case is left out: its absorption is not
 resolved by cells (25 to 40 % off), as the program warns.
 """
@@ -48,7 +48,7 @@ def test_quick_run_of_sixteen_cells(name):
     spots = [case.points_nm[point] for point in ("20nm_above_top", "beside_5nm_x", "beside_5nm_y")]
     cell = 2.0 * case.radius_nm / 16.0
     out = sb.scatter(
-        stack_of(case), [sphere_of(case)], light_of(case), CONES, spots_nm=spots, quick=True, cell_nm=cell, accuracy=2e-4
+        stack_of(case), [sphere_of(case)], light_of(case), CONES, spots_nm=spots, quick=True, cell_nm=cell, accuracy=1e-3
     )
     assert out.work.value == pytest.approx(exact["sigma_ext_nm2"], rel=work)
     assert out.up.value == pytest.approx(exact["sigma_up_nm2"], rel=up)
@@ -82,7 +82,7 @@ def test_emitter_among_sphere_and_stack(name, cells, total, up):
     case = CASES[name]
     position, direction = case.emitter
     emitter = sb.Emitter(position, case.wavelength_nm, direction)
-    out = sb.emit(stack_of(case), [sphere_of(case)], emitter, quick=True, cell_nm=2.0 * case.radius_nm / cells, accuracy=2e-4)
+    out = sb.emit(stack_of(case), [sphere_of(case)], emitter, quick=True, cell_nm=2.0 * case.radius_nm / cells, accuracy=1e-3)
     assert out.total.value == pytest.approx(case.results["b_total"], rel=total / 100.0)
     assert out.up.value == pytest.approx(case.results["b_up"], rel=up / 100.0)
     if "b_down" in case.results:
