@@ -221,9 +221,10 @@ def _check(options) -> int:
     for axis in case.axes:
         print(f"series {axis.key}: {len(axis.values)} values, {_shortly(axis.values)}")
     total = costs(points)
-    print(f"{len(points)} point{'s' if len(points) > 1 else ''}, {total.solves} solution{'s' if total.solves != 1 else ''} of coupled cells")
+    print(f"points: {len(points)}; series of grids to solve: {total.solves}")
     if total.solves:
-        print(f"grids: {total.grids} a solution, finest cell {total.cell_nm:.3g} nm, {total.occupied_cells} occupied cells of {total.cells_in_box}")
+        cells = f"{total.occupied_cells} occupied cells of {total.cells_in_box}"
+        print(f"each on {total.grids} grid{'s' if total.grids > 1 else ''}; the finest: cells of {total.cell_nm:.3g} nm, {cells}")
         print(f"memory about {total.memory_bytes / 1e6:.0f} MB, time about {duration(total.seconds)} (rough)")
     for words in total.cautions:
         print(f"caution: {words}")

@@ -44,7 +44,8 @@ def test_run_leaves_its_files_and_prints_the_table(here, questions, pictures, ca
     folder = here / "results" / "one"
     assert read_results(folder / "one.h5").complete
     assert (folder / "table.csv").read_text(encoding="utf-8").startswith("point,status,cross_sections/absorbed [nm^2]")
-    assert (folder / "report.html").is_file() and pictures == [("save_figures", Path("results/one/figures")), ("write_report", Path("results/one/report.html"))]
+    assert (folder / "report.html").is_file()
+    assert pictures == [("save_figures", Path("results/one/figures")), ("write_report", Path("results/one/report.html"))]
     assert out.startswith("Fake balls\n")
     assert ["work", "3798", "±", "38", "nm^2"] in [line.split() for line in out.splitlines()]
     assert "caution: a film is thin" in out
@@ -164,7 +165,7 @@ def test_check_computes_nothing_and_draws_the_sample(here, questions, pictures, 
     assert main(["check", "three.toml"]) == 0
     out = capsys.readouterr().out
     assert questions.calls == [] and pictures == [("save_sketch", Path("results/three-sketch.png"))]
-    assert "3 points" in out and "17157 occupied cells" in out and "17 MB" in out and "12 s" in out
+    assert "points: 3" in out and "17157 occupied cells" in out and "17 MB" in out and "12 s" in out
     assert "light.wavelength_nm: 3 values, 500, 600, 700" in out
 
 

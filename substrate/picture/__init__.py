@@ -1,1 +1,1 @@
-
+"""FROM results file TO figures and report."""

@@ -98,7 +98,7 @@ def emit(
     quick: bool = False,
     progress: Progress | None = None,
 ) -> Emission:
-    """Decay-rate factors of an emitter over the stack among the particles; particles=() is the plane stack alone, exact and fast.
+    """Decay-rate factors of an emitter over the stack among the particles; particles=() is the plane stack alone, exact, a fraction of a second.
 
     Arguments as in `scatter`. Raises InputError for an emitter in or on a particle and NotConverged, whose `best` is an
     Emission without bars, if an iteration fails.

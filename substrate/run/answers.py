@@ -52,12 +52,13 @@ def field_map(answer, ask: Mapping, prefix: str = "") -> dict[str, ArrayResult]:
     about = {"plane": f"{ask['plane']} at {w_name} = {ask['at_nm']:g} nm"}
     axes = ((u_name, "nm"), (v_name, "nm"))
     shape = (len(u), len(v))
+    inside = np.asarray(answer.inside(flat)).reshape(shape).astype(np.uint8)
     words = "|E|^2 over |E|^2 of the incident wave alone, on the finest grid (without a bar); inside of particles the field of the cells"
     return {
         f"{prefix}field_map_e2": ArrayResult(answer.intensity(flat).reshape(shape), "1", words, axes, None, about),
         f"{prefix}field_map_u_nm": ArrayResult(u, "nm", f"{u_name} of the map", ((u_name, "nm"),)),
         f"{prefix}field_map_v_nm": ArrayResult(v, "nm", f"{v_name} of the map", ((v_name, "nm"),)),
-        f"{prefix}field_map_inside": ArrayResult(answer.inside(flat).reshape(shape).astype(np.uint8), "1", "1 in a particle, 0 outside", axes, None, about),
+        f"{prefix}field_map_inside": ArrayResult(inside, "1", "1 in a particle, 0 outside", axes, None, about),
     }
 
 

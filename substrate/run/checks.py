@@ -1,4 +1,4 @@
-"""What must fit together in a case: gaps, collectors, what each question needs, materials and their ranges; and the defaults that depend on it."""
+"""What must fit together in a case: gaps, collectors, the needs of each question, materials and ranges; and defaults that depend on it."""
 
 from __future__ import annotations
 
@@ -50,7 +50,8 @@ def complete(tables: dict, folder: Path) -> None:
             ask["center_nm"] = ask["center_nm"] or [0.0, middle]
             ask["count"] = ask["count"] or list(_PLANE_COUNT)
     for _, holder, key in _material_places(tables):
-        holder[key] = [_located(spec, folder) for spec in _values(holder[key])] if isinstance(holder[key], list) else _located(holder[key], folder)
+        spec = holder[key]
+        holder[key] = [_located(item, folder) for item in spec] if isinstance(spec, list) else _located(spec, folder)
 
 
 def _values(value: object) -> list:
@@ -238,4 +239,5 @@ def _materials(tables: Mapping, folder: Path) -> Iterator[Problem]:
         outside = [value for value in used if not low <= value <= high]
         if outside:
             words = ", ".join(f"{value:g}" for value in outside[:3]) + (" ..." if len(outside) > 3 else "")
-            yield Problem(where, f"{spec} at {words} nm", f"{low:g} to {high:g} nm, the range of its table ({found.citation})", "Tables are never extrapolated.")
+            allowed = f"{low:g} to {high:g} nm, the range of its table ({found.citation})"
+            yield Problem(where, f"{spec} at {words} nm", allowed, "Tables are never extrapolated.")

@@ -228,7 +228,9 @@ def _options(tables: Mapping, progress) -> dict:
     return {"accuracy": accuracy["relative"], "cell_nm": accuracy["cell_nm"], "quick": accuracy["quick"], "progress": progress}
 
 
-def _add_arrays(tables: Mapping, sample: Sample, wavelength_nm: float, found, units: Mapping, pattern_unit: str, prefix: str, answer: _Answer) -> None:
+def _add_arrays(
+    tables: Mapping, sample: Sample, wavelength_nm: float, found, units: Mapping, pattern_unit: str, prefix: str, answer: _Answer
+) -> None:
     """The pattern, where it was asked for, and the convergence of one answer."""
     for ask in tables["ask"]:
         if ask["what"] == "far field" and (sample.particles or pattern_unit == "1/sr"):  # without a particle no light is scattered

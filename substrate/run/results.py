@@ -303,7 +303,9 @@ def _text(dataset) -> str:
 def csv_table(results: Results) -> str:
     """The headline table as comma-separated values: one row a point, each quantity with its error bar in the next column."""
     parameters = list(dict.fromkeys(key for point in results.points for key in point.parameters))
-    units = {(ask, name): quantity.unit for point in results.points for ask, group in point.quantities.items() for name, quantity in group.items()}
+    units = {}
+    for point in results.points:
+        units |= {(ask, name): quantity.unit for ask, named in point.quantities.items() for name, quantity in named.items()}
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
     header = ["point", "status", *parameters]

@@ -49,7 +49,7 @@ def reflected_scalars(stack: LayerStack, rho_nm, height_sum_nm, end: float | Non
         for low, high in _finite_panels(k, right, rho, height, mp.mpf(depth)):
             total += _panel(stack, low, high, rho, height, _bessel_j)
         if rho < height:
-            for low, high in _graded(right, 1, min(4 / height, mp.inf), _DECAY / height + right):
+            for low, high in _graded(right, 1, 4 / height, _DECAY / height + right):
                 total += _panel(stack, low, high, rho, height, _bessel_j)
         else:
             for turn, function in ((mp.mpc(0, 1), _half_hankel_1), (mp.mpc(0, -1), _half_hankel_2)):
@@ -121,10 +121,39 @@ def _bessel_j(x) -> tuple:
 
 
 def _half_hankel_1(x) -> tuple:
-    """H1/2 of orders 0, 1, 2 from K_n(-ix), accurate where it decays."""
-    turned = mp.mpc(0, -1) * x
-    zero, one = mp.besselk(0, turned) / (mp.pi * mp.mpc(0, 1)), -mp.besselk(1, turned) / mp.pi
-    return zero, one, 2 * one / x - zero
+    """H1/2 of orders 0, 1, 2 for x in the upper right quadrant, to the accuracy of a value that decays as e^{-Im x}."""
+    zero, one = _hankel_far(x) if abs(x) > 40 else _hankel_near(x)
+    return zero / 2, one / 2, one / x - zero / 2
+
+
+def _hankel_far(x) -> tuple:
+    """Orders 0 and 1 from the asymptotic series, whose smallest term is of the order e^{-2|x|}."""
+    out = []
+    for n in (0, 1):
+        term, total, k = mp.mpc(1), mp.mpc(1), 0
+        while abs(term) > mp.eps:
+            k += 1
+            term *= mp.mpc(0, 1) * mp.mpf(4 * n * n - (2 * k - 1) ** 2) / (8 * k * x)
+            total += term
+        out.append(mp.sqrt(2 / (mp.pi * x)) * mp.expj(x - (2 * n + 1) * mp.pi / 4) * total)
+    return tuple(out)
+
+
+def _hankel_near(x) -> tuple:
+    """Orders 0 and 1 from the power series of J0, J1, Y0 and the Wronskian J1 Y0 - J0 Y1 = 2/(pi x), with digits for e^{2|x|} to cancel."""
+    with mp.extradps(int(0.9 * abs(x)) + 15):
+        quarter, term, harmonic, k = -(x**2) / 4, mp.mpc(1), mp.mpf(0), 0
+        j0, j1, y0 = mp.mpc(1), x / 2, mp.mpc(0)
+        while abs(term) > mp.eps or k < abs(x):
+            k += 1
+            term *= quarter / k**2
+            harmonic += mp.mpf(1) / k
+            j0 += term
+            j1 += term * x / (2 * (k + 1))
+            y0 -= harmonic * term
+        y0 = 2 / mp.pi * ((mp.log(x / 2) + mp.euler) * j0 + y0)
+        y1 = (j1 * y0 - 2 / (mp.pi * x)) / j0
+        return j0 + mp.mpc(0, 1) * y0, j1 + mp.mpc(0, 1) * y1
 
 
 def _half_hankel_2(x) -> tuple:

