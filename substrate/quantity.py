@@ -32,6 +32,8 @@ class Quantity:
         unit = "" if self.unit in ("", "1") else f" {self.unit}"
         if self.error is None:
             return f"{self.value:.5g}{unit} (no error bar)"
+        if self.value == 0.0 and self.error == 0.0:
+            return f"0{unit}"  # nothing there by construction, such as absorption in a lossless particle
         return f"{format_with_error(self.value, self.error)}{unit}"
 
 

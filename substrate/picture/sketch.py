@@ -16,7 +16,8 @@ def draw_sketch(sketch: Sketch) -> Figure:
     figure = new_figure(7.0, 5.0)
     axes = figure.add_subplot()
     half, top = _view(sketch)
-    depth = 0.75 * top
+    films = sum(layer["thickness_nm"] or 0.0 for layer in sketch.layers)
+    depth = min(max(1.45 * films, 0.4 * top), 0.9 * top)
     _layers(axes, sketch, half, top, depth)
     for number, outline in enumerate(sketch.outlines):
         if outline["x_nm"]:
@@ -65,7 +66,7 @@ def _layers(axes, sketch: Sketch, half: float, top: float, depth: float) -> None
             thin.append(words)
         if cut:
             xs = [-half + i * half / 20.0 for i in range(41)]
-            axes.plot(xs, [z - 0.5 * shown + 0.012 * depth * (-1) ** i for i in range(41)], color="white", linewidth=2.0)
+            axes.plot(xs, [z - 0.82 * shown + 0.012 * depth * (-1) ** i for i in range(41)], color="white", linewidth=2.0)
         z -= shown
     axes.add_patch(Rectangle((-half, -depth), 2 * half, depth + z, facecolor=LAYER_COLOURS[0], edgecolor=INK, linewidth=0.6))
     lines = [f"{base['name']}, n = {base['index_text']}"]

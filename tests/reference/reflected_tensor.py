@@ -45,6 +45,8 @@ def reflected_scalars(stack: LayerStack, rho_nm, height_sum_nm, end: float | Non
             raise ValueError(f"height_sum_nm = {height_sum_nm}: the integrals exist for z + z' > 0 only")
         k = stack.k0 * mp.mpmathify(stack.index[0])
         right = stack.k0 * (right_of_poles(stack) if end is None else mp.mpf(end))
+        if rho >= height:
+            right += 4 / rho  # films repeat their poles upwards and downwards: panels of 4/rho keep off that column
         total = mp.matrix(4, 1)
         for low, high in _finite_panels(k, right, rho, height, mp.mpf(depth)):
             total += _panel(stack, low, high, rho, height, _bessel_j)
