@@ -47,7 +47,8 @@ class Stack:
 
         if not 0.0 < wavelength_nm < math.inf:
             raise InputError(Problem("wavelength_nm", wavelength_nm, "a number above 0"))
-        specs = [("host", self.host), *((f"films[{i}]", film.material) for i, film in enumerate(self.films)), ("base", self.base)]
+        films = ((f"stack.films[{i}].material", film.material) for i, film in enumerate(self.films, 1))
+        specs = [("stack.host", self.host), *films, ("stack.base", self.base)]
         index = tuple(complex(material(spec, where).index(wavelength_nm)) for where, spec in specs)
         if abs(index[0].imag) > 1e-4 * index[0].real:
             raise InputError(

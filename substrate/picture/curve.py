@@ -95,7 +95,7 @@ def draw_curve(results: Results, ask: str, unit: str, names: list[str]) -> Figur
 
 
 def _family_word(ask: str, unit: str) -> str:
-    return {"nm^2": "cross section", "ns": "lifetime"}.get(unit, {"emission": "factor", "near_field": "|E|² / |E incident|²"}.get(ask, "value"))
+    return {"nm^2": "cross section", "ns": "lifetime"}.get(unit, {"emission": "factor", "near_field": "|E|² / |E incident|²", "reflectance": "share"}.get(ask, "value"))
 
 
 def _parameter_label(name: str) -> str:

@@ -39,7 +39,7 @@ def figures(results: Results) -> Iterator[tuple[str, str, Figure, tuple[list[str
         for ask in dict.fromkeys(ask for point in good for ask in point.quantities):
             for unit, members in families(results, ask).items():
                 names = [name for name, _ in members]
-                words = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for"}.get(ask, ask)
+                words = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for", "reflectance": "Shares of the incident power"}.get(ask, ask)
                 stem = f"{ask}_{_file_word(unit)}" if unit != "1" else ask
                 yield stem, f"{words} over the series.", draw_curve(results, ask, unit, names), curve_rows(results, ask, names)
     for number, point in enumerate(good[:MOST_POINTS], 1):

@@ -35,7 +35,7 @@ pre { background: #f6f6f3; padding: 1rem; overflow-x: auto; font-size: .8rem; li
 @media print { body { margin: 0; max-width: none; font-size: 11pt; } h2 { break-after: avoid; } }
 """
 
-_ASKS = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for", "far_field": "Far field"}
+_ASKS = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for", "far_field": "Far field", "reflectance": "Plane stack"}
 
 _CONVENTIONS = (
     "Time factor exp(-i omega t), index n + ik with k at least 0. Lengths in nm, vacuum wavelengths too; angles in degrees. z points up, z = 0 "

@@ -17,6 +17,7 @@ _NEEDS = {  # question -> tables of which at least one must be there
     "near field": ("light",),
     "emission": ("emitter",),
     "far field": ("light", "emitter"),
+    "reflectance": ("light",),
 }
 _PARTICLE_QUESTIONS = ("cross sections",)
 _BRACKETS = {"light": "[light]", "emitter": "[[emitter]]", "particle": "[[particle]]"}
@@ -137,7 +138,7 @@ def _asks(tables: Mapping) -> Iterator[Problem]:
     seen: list[str] = []
     for number, ask in enumerate(tables["ask"] or [], 1):
         what, where = ask.get("what"), f"ask[{number}]"
-        if what not in _NEEDS:
+        if not isinstance(what, str) or what not in _NEEDS:
             continue
         if what in seen and what != "near field":
             yield Problem(f"{where}.what", what, "each question once", "Leave the second one out.")

@@ -38,8 +38,11 @@ def costs(points: Sequence[Point]) -> Cost:
         accuracy = point.tables["accuracy"]
         for source in sample.sources():
             layers = sample.stack.at(source.wavelength_nm)
-            one = estimate(sample.particles, layers, accuracy["relative"], accuracy["cell_nm"], accuracy["quick"])
-            times = len(source.jones() if isinstance(source, PlaneWave) else source.moments())
+            is_light = isinstance(source, PlaneWave)
+            spots = [spot for ask in point.tables["ask"] if ask["what"] == "near field" for spot in ask["points_nm"]]
+            near = spots if is_light else [source.position_nm]
+            one = estimate(sample.particles, layers, accuracy["relative"], accuracy["cell_nm"], accuracy["quick"], near)
+            times = len(source.jones() if is_light else source.moments())
             found.append(one)
             solves += times
             seconds += times * one.seconds

@@ -188,6 +188,11 @@ def _ask(tables: Mapping, answer: _Answer, progress: _Progress | None) -> None:
     emitters = sample.emitters if asked & {"emission", "far field"} else ()
     if progress is not None:
         progress.questions = max(1, light + len(emitters))
+    if "reflectance" in asked:
+        from substrate.question.plane_stack import reflectance
+
+        answer.quantities["reflectance"] = answers.reflectance_quantities(reflectance(sample.stack, sample.light))
+        answer.methods.append("exact, plane stack")
     if light:
         _ask_light(tables, sample, asked, answer, progress)
     for number, emitter in enumerate(emitters, 1):

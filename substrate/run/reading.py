@@ -48,7 +48,7 @@ class Reading:
                 read[name] = self.value(value, known[name], inner, (*path, name))
             else:
                 self.unknown(name, known, variants, word, where)
-        sure = variants is None or word in variants.own
+        sure = variants is None or (isinstance(word, str) and word in variants.own)
         misspelt = [name for name in written if name not in known]
         complete = {}
         for name, key in known.items():

@@ -165,6 +165,7 @@ ASK = Variants(
             "center_nm": Key("vector", None, size=2, series=False),
             "count": Key("counts", None, 2, 1000, series=False),
         },
+        "reflectance": {},
         "far field": {"count": Key("counts", (46, 72), 2, 1000, series=False)},
     },
 )

@@ -7,9 +7,9 @@ reflected and the azimuth integrated in closed form, four scalars remain (k host
     B  = 1/(4 pi k^2) int q^2 J1 r_p e^{i kz Z} dq                   C  = i/(4 pi k^2) int q^3/kz J0 r_p e^{i kz Z} dq
 r_p belongs to the magnetic field. Reflections by characteristic matrices (`multilayer`); nothing is subtracted in closed form.
 
-The path is a polygon below the axis, 0 -> b(1 - i) -> (e - b) - ib -> e with e right of all poles. From e on along the real axis
-where Z is the larger distance; where rho is, J = (H1 + H2)/2 and both parts run vertically, e + it and e - it, where they fall as
-e^{-t rho}. `end` and `depth` move the path: results must not change, and a pole right of `end` shows as a change with `end`.
+The path is a polygon below the axis, 0 -> b(1 - i) -> (e - b) - ib -> e with e right of all poles, then the real axis: to the end
+where Z is the larger distance; where rho is, to f > e, and then J = (H1 + H2)/2 and both parts run vertically, f + it and f - it,
+where they fall as e^{-t rho}. `end` and `depth` move the path: results must not change, and a pole right of `end` shows as a change with `end`.
 """
 
 from __future__ import annotations
@@ -45,18 +45,18 @@ def reflected_scalars(stack: LayerStack, rho_nm, height_sum_nm, end: float | Non
             raise ValueError(f"height_sum_nm = {height_sum_nm}: the integrals exist for z + z' > 0 only")
         k = stack.k0 * mp.mpmathify(stack.index[0])
         right = stack.k0 * (right_of_poles(stack) if end is None else mp.mpf(end))
+        near_axis = _finite_panels(k, right, rho, height, mp.mpf(depth))
+        # films repeat their poles upwards and downwards: 4/rho further on, panels of 4/rho keep off that column
+        near_axis += _graded(right, 1, 4 / max(rho, height), 4 / rho if rho >= height else _DECAY / height)
+        parts = [(near_axis, _bessel_j)]
         if rho >= height:
-            right += 4 / rho  # films repeat their poles upwards and downwards: panels of 4/rho keep off that column
-        total = mp.matrix(4, 1)
-        for low, high in _finite_panels(k, right, rho, height, mp.mpf(depth)):
-            total += _panel(stack, low, high, rho, height, _bessel_j)
-        if rho < height:
-            for low, high in _graded(right, 1, 4 / height, _DECAY / height + right):
-                total += _panel(stack, low, high, rho, height, _bessel_j)
-        else:
+            turning_point = near_axis[-1][1]
             for turn, function in ((mp.mpc(0, 1), _half_hankel_1), (mp.mpc(0, -1), _half_hankel_2)):
-                for low, high in _graded(right, turn, 4 / rho, _DECAY / rho):
-                    total += _panel(stack, low, high, rho, height, function)
+                parts.append((_graded(turning_point, turn, 4 / rho, _DECAY / rho), function))
+        total = mp.matrix(4, 1)
+        for panels, cylinder in parts:
+            for low, high in panels:
+                total += _panel(stack, low, high, rho, height, cylinder)
         unit = mp.mpc(0, 1) / (8 * mp.pi)
         return unit * total[0], unit * total[1], total[2] / (4 * mp.pi * k**2), 2 * unit * total[3] / k**2
 

@@ -114,3 +114,16 @@ def test_lifetime_under_gold_sphere():
     # 5 %: a part of the full run's bar; the radiated part is the safest number near metals
     assert emission["up"].value == pytest.approx(3.73, rel=0.05)
     assert emission["quantum_yield"].value < 0.8  # quenching wins over the intrinsic yield
+
+
+def test_coupling_into_a_gold_film():
+    """Least reflection near 43.79 degrees for 50 nm of gold on N-BK7 at 632.8 nm (calculated with 25-digit arithmetic for gold of 0.18377+3.43125i)."""
+    case = read_case(CASES / "coupling-into-a-gold-film.toml")
+    points = [run_point(point) for point in case.points()]
+    shares = [point.quantities["reflectance"] for point in points]
+    reflected = [share["reflected"].value for share in shares]
+    assert abs(35.0 + 0.25 * int(np.argmin(reflected)) - 43.786) <= 0.25  # steps of the case
+    assert min(reflected) < 0.02  # the dip of 0.006 is narrow: steps of 0.25 degrees miss its bottom
+    assert max(point.quantities["near_field"]["spot_1"].value for point in points) > 20.0
+    total = [share["reflected"].value + share["transmitted"].value + share["absorbed/film_1"].value for share in shares]
+    assert np.abs(np.array(total) - 1.0).max() < 1e-9  # rounding
