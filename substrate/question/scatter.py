@@ -92,8 +92,9 @@ class Scattering:
 
     def pattern(self, polar_deg, azimuth_deg) -> np.ndarray:
         """dC/dOmega in nm^2/sr, both polarisations of the scattered wave summed, at directions (n,). Finest grid."""
-        sets = [_dipoles(solution) for solution in self._solutions]
-        return np.mean([pattern(dipoles, self._layers, polar_deg, azimuth_deg) for dipoles in sets], axis=0)
+        pairs = zip(self._solutions, self._waves)
+        found = [pattern(_dipoles(solution), self._layers, polar_deg, azimuth_deg) / wave.irradiance for solution, wave in pairs]
+        return np.mean(found, axis=0)
 
     def inside(self, points_nm) -> np.ndarray:
         """True where a point (n, 3) lies in a particle."""
@@ -214,6 +215,7 @@ def _observe(solution: Solution, wave: StackWave, windows: dict, filled: FilledP
     stack, closure = stack_share(layers, work, absorbed, up + down + modes, solution.given_away)
     out = {"work": work, "absorbed": absorbed, "up": up, "down": down, "guided": modes, "stack": stack, "balance": closure}
     out |= collected_power(dipoles, layers, windows)
+    out = {name: value if name == "balance" else value / wave.irradiance for name, value in out.items()}
     if len(spots):
         table = viewing_table(solution.problem.cells, layers, spots)
         e = total_field(solution, filled, table, wave.field, spots)

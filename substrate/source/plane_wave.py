@@ -82,6 +82,11 @@ class StackWave:
     amplitudes: tuple[complex, complex]
     side: str = "above"
 
+    @property
+    def irradiance(self) -> float:
+        """Irradiance of the incident wave, normal to its own direction, over that of a unit wave in the host: n/n_host."""
+        return (self.layers.index[0] if self.side == "above" else self.layers.index[-1]).real / self.layers.index[0].real
+
     def field(self, points_nm):
         """E at points (n, 3) with z >= 0; complex (n, 3)."""
         import numpy as np

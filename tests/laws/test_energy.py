@@ -113,3 +113,18 @@ def test_sources_of_power_helpers_agree_for_one_dipole():
     p = source.dipoles[0]
     total = k**4 / (6 * np.pi) * np.vdot(p, p).real + k * (p.conj() @ tensor @ p).imag
     assert abs((up + through) / total - 1.0) < 1e-9  # quadrature
+
+
+def test_light_from_below_is_referred_to_its_own_irradiance():
+    """Under a base of the host's index times n, at normal incidence through an index-matched film nothing but the irradiance changes.
+
+    A small particle in the transmitted wave of amplitude t = 2 n_b/(n_b + n_h): absorbed power over I_inc, which is n_b/n_h times that of a
+    unit wave in the host; so C_below/C_free = t^2 n_h/n_b as far as the particle's own reflection is weak.
+    """
+    n = 1.5
+    body = [sb.Sphere(material=1.05 + 0.02j, diameter_nm=10.0, gap_nm=400.0)]
+    settings = {"quick": True, "cell_nm": 1.0, "accuracy": 1e-3}
+    below = sb.scatter(sb.Stack(1.0, [], n), body, sb.PlaneWave(WAVELENGTH, side="below"), **settings)
+    free = sb.scatter(sb.Stack(1.0, [], 1.0), body, sb.PlaneWave(WAVELENGTH), **settings)
+    expected = (2 * n / (n + 1)) ** 2 / n
+    assert abs(below.absorbed.value / free.absorbed.value / expected - 1.0) < 1e-5  # a 10 nm sphere of such weak contrast scatters nothing worth it

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import math
 
+import mpmath as mp
+
 
 def depolarisation_factors(ratio: float) -> tuple[float, float]:
     """(along the axis of revolution, across) of a spheroid; ratio = axis length over equatorial diameter. They obey N + 2 N' = 1.
@@ -41,3 +43,11 @@ def sphere_over_half_space(eps: complex, eps_base: complex, radius: float, heigh
     own = sphere_polarizability(eps, radius)
     image = (eps_base - 1.0) / (eps_base + 1.0)
     return own / (1.0 - own * image / (16.0 * math.pi * height**3)), own / (1.0 - own * image / (32.0 * math.pi * height**3))
+
+
+def ellipsoid_depolarisation(axis: float, second: float, third: float) -> float:
+    """Depolarisation factor along `axis` of an ellipsoid with these half axes (any common unit); the three of one ellipsoid add to 1.
+
+    Bohren & Huffman (5.33): (a b c/2) int_0^inf du / ((a^2 + u)^(3/2) (b^2 + u)^(1/2) (c^2 + u)^(1/2)), Carlson's R_D of three squares.
+    """
+    return float(axis * second * third / 3 * mp.elliprd(mp.mpf(second) ** 2, mp.mpf(third) ** 2, mp.mpf(axis) ** 2))

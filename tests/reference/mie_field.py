@@ -55,16 +55,20 @@ def scattering_matrix(m, x, angle_deg: float) -> ScatteringMatrix:
     return ScatteringMatrix((abs(s1) ** 2 + abs(s2) ** 2) / 2, (abs(s2) ** 2 - abs(s1) ** 2) / 2, cross.real, cross.imag)
 
 
-def riccati_bessel(z, count: int) -> tuple[list, list, list, list]:
-    """psi, xi and their derivatives of complex z, orders 0..count (derivatives from 1), each order by its own Bessel function."""
+def riccati_psi(z, count: int) -> tuple[list, list]:
+    """psi_n = z j_n of complex z, orders 0..count, and the derivatives (from order 1); each order by its own Bessel function."""
     scale = mp.sqrt(mp.pi * z / 2)
-    psi = [scale * mp.besselj(n + mp.mpf(1) / 2, z) for n in range(count + 1)]
-    xi = [psi[n] + mp.mpc(0, 1) * scale * mp.bessely(n + mp.mpf(1) / 2, z) for n in range(count + 1)]
+    return _with_slopes([scale * mp.besselj(n + mp.mpf(1) / 2, z) for n in range(count + 1)], z)
 
-    def slope(values):
-        return [None] + [values[n - 1] - n * values[n] / z for n in range(1, count + 1)]
 
-    return psi, xi, slope(psi), slope(xi)
+def riccati_xi(z, count: int) -> tuple[list, list]:
+    """xi_n = z h1_n of real z, as `riccati_psi`."""
+    scale = mp.sqrt(mp.pi * z / 2)
+    return _with_slopes([scale * mp.hankel1(n + mp.mpf(1) / 2, z) for n in range(count + 1)], z)
+
+
+def _with_slopes(values: list, z) -> tuple[list, list]:
+    return values, [None] + [values[n - 1] - n * values[n] / z for n in range(1, len(values))]
 
 
 @dataclass(frozen=True)
@@ -116,8 +120,8 @@ class _Series:
         """(c_n, d_n), orders 1..count; the numerators of (4.52) are the Wronskian i."""
         if len(self._inner) <= count:
             x = self.k * self.radius
-            _, xi, _, xi_slope = riccati_bessel(x, count)
-            psi, _, psi_slope, _ = riccati_bessel(self.m * x, count)
+            xi, xi_slope = riccati_xi(x, count)
+            psi, psi_slope = riccati_psi(self.m * x, count)
             top = self.m * mp.mpc(0, 1)
             self._inner = [(None, None)] + [
                 (top / (psi[n] * xi_slope[n] - self.m * xi[n] * psi_slope[n]), top / (self.m * psi[n] * xi_slope[n] - xi[n] * psi_slope[n]))
@@ -134,20 +138,17 @@ class _Series:
         inside = r < self.radius
         rho = self.k * r * (self.m if inside else 1)
         count = enough_terms(float(abs(self.k * max(r, self.radius))))
-        magnetic, electric = self._weights(inside, count)
-        psi, xi, psi_slope, xi_slope = riccati_bessel(rho, count)
+        factors, m_values, n_values, n_slopes = self._radial(inside, rho, count)
         cosine = z / r
         pi, tau = angular_functions(cosine, count)
         radial = polar = azimuthal = mp.mpc(0)
         for n in range(1, count + 1):
-            unit = mp.mpc(0, 1) ** n * mp.mpf(2 * n + 1) / (n * (n + 1))
-            # E = sum unit (M - i N) with psi for the regular part and xi for the scattered part
-            m_value = unit * (magnetic[n][0] * psi[n] + magnetic[n][1] * xi[n]) / rho
-            n_value = -mp.mpc(0, 1) * unit * (electric[n][0] * psi[n] + electric[n][1] * xi[n]) / rho**2
-            n_slope = -mp.mpc(0, 1) * unit * (electric[n][0] * psi_slope[n] + electric[n][1] * xi_slope[n]) / rho
-            radial += n * (n + 1) * pi[n] * n_value
-            polar += pi[n] * m_value + tau[n] * n_slope
-            azimuthal += tau[n] * m_value + pi[n] * n_slope
+            # E = sum over n of i^n (2n+1)/(n(n+1)) (M - i N)
+            magnetic = factors[n] * m_values[n]
+            electric, slope = mp.mpc(0, -1) * factors[n] * n_values[n], mp.mpc(0, -1) * factors[n] * n_slopes[n]
+            radial += n * (n + 1) * pi[n] * electric
+            polar += pi[n] * magnetic + tau[n] * slope
+            azimuthal += tau[n] * magnetic + pi[n] * slope
         across = mp.sqrt(x * x + y * y)
         cos_phi, sin_phi = (x / across, y / across) if across else (mp.mpf(1), mp.mpf(0))
         sine = across / r
@@ -155,10 +156,17 @@ class _Series:
         along = sine * e_r + cosine * e_t
         return along * cos_phi - e_p * sin_phi, along * sin_phi + e_p * cos_phi, cosine * e_r - sine * e_t
 
-    def _weights(self, inside: bool, count: int) -> tuple[list, list]:
-        """Factors of (psi, xi) for M and for N, per order."""
+    def _radial(self, inside: bool, rho, count: int) -> tuple[list, list, list, list]:
+        """Per order: i^n (2n+1)/(n(n+1)), z_n of M, z_n/rho and (rho z_n)'/rho of N, with the coefficients of the region."""
+        factors = [None] + [mp.mpc(0, 1) ** n * mp.mpf(2 * n + 1) / (n * (n + 1)) for n in range(1, count + 1)]
+        psi, psi_slope = riccati_psi(rho, count)
+        orders = range(1, count + 1)
         if inside:
             inner = self.inner(count)
-            return [(c, 0) for c, _ in inner], [(d, 0) for _, d in inner]
-        a, b = coefficients(self.m, self.k * self.radius, count)
-        return [(1, -(b[n] or 0)) for n in range(count + 1)], [(1, -(a[n] or 0)) for n in range(count + 1)]
+            values = [(inner[n][0] * psi[n], inner[n][1] * psi[n], inner[n][1] * psi_slope[n]) for n in orders]
+        else:
+            a, b = coefficients(self.m, self.k * self.radius, count)
+            xi, xi_slope = riccati_xi(rho, count)
+            values = [(psi[n] - b[n] * xi[n], psi[n] - a[n] * xi[n], psi_slope[n] - a[n] * xi_slope[n]) for n in orders]
+        m_values, n_values, n_slopes = zip(*values)
+        return factors, [None, *(v / rho for v in m_values)], [None, *(v / rho**2 for v in n_values)], [None, *(v / rho for v in n_slopes)]
