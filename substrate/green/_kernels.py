@@ -68,16 +68,21 @@ def averaged_tensors(k, point, spots, weights, out):
 
 
 @compiled
-def reflected_sum(k, beta, points, sources, levels, dipoles, rest, step, out):
-    """out (n, 3) += reflected field; rest (levels, n_rho, 4) on a uniform rho grid for these points' common height, image in closed form."""
+def reflected_sum(k, beta, points, sources, levels, sums, carriers, dipoles, rest, step, out):
+    """out (n, 3) += reflected field at points of one common height; sums[level] = z + z', carriers[level] = e^{ik(z + z')}.
+
+    rest (levels, n_rho, 4) is the remainder on a uniform rho grid; the image is added in closed form, with
+    e^{ikR} = e^{ik(z + z')} e^{ik rho^2/(R + z + z')}, so that a pair costs one sine and one cosine.
+    """
     last = rest.shape[1] - 3
     strength = beta / (8.0 * np.pi)
     for a in range(points.shape[0]):
         ex, ey, ez = 0j, 0j, 0j
         for b in range(sources.shape[0]):
+            level = levels[b]
             x = points[a, 0] - sources[b, 0]
             y = points[a, 1] - sources[b, 1]
-            z = points[a, 2] + sources[b, 2]
+            z = sums[level]
             rho2 = x * x + y * y
             rho = np.sqrt(rho2)
             place = rho / step
@@ -87,28 +92,29 @@ def reflected_sum(k, beta, points, sources, levels, dipoles, rest, step, out):
             w1 = t * (t - 2.0) * (t - 3.0) / 2.0
             w2 = -t * (t - 1.0) * (t - 3.0) / 2.0
             w3 = t * (t - 1.0) * (t - 2.0) / 6.0
-            level = levels[b]
             a0 = w0 * rest[level, i, 0] + w1 * rest[level, i + 1, 0] + w2 * rest[level, i + 2, 0] + w3 * rest[level, i + 3, 0]
             a2 = w0 * rest[level, i, 1] + w1 * rest[level, i + 1, 1] + w2 * rest[level, i + 2, 1] + w3 * rest[level, i + 3, 1]
             bb = w0 * rest[level, i, 2] + w1 * rest[level, i + 1, 2] + w2 * rest[level, i + 2, 2] + w3 * rest[level, i + 3, 2]
             cc = w0 * rest[level, i, 3] + w1 * rest[level, i + 1, 3] + w2 * rest[level, i + 2, 3] + w3 * rest[level, i + 3, 3]
             square = rho2 + z * z
             distance = np.sqrt(square)
+            inverse = 1.0 / square
             phase = k * distance
-            g = complex(np.cos(phase), np.sin(phase)) / distance
-            g1 = g * complex(-1.0, phase) / square
-            g2 = g * complex(3.0 - phase * phase, -3.0 * phase) / (square * square)
-            detour = rho2 / (distance + z)
-            bend = k * detour
+            lift = 1.0 / (distance + z)
+            bend = k * rho2 * lift
+            turned = complex(np.cos(bend), np.sin(bend))
             if bend > 1e-4:
-                phi = complex(np.cos(bend) - 1.0, np.sin(bend)) / complex(0.0, bend)
+                phi = (turned - 1.0) * complex(0.0, -1.0 / bend)
             else:
                 phi = complex(1.0 - bend * bend / 6.0, 0.5 * bend)
-            j2 = 2.0 * complex(np.cos(k * z), np.sin(k * z)) * phi / (distance + z) - g
-            g_zz = g1 + g2 * z * z
+            g = carriers[level] * turned / distance
+            g1 = g * complex(-1.0, phase) * inverse
+            g2 = g * complex(3.0 - phase * phase, -3.0 * phase) * (inverse * inverse)
+            j2 = 2.0 * lift * carriers[level] * phi - g
+            g_zz = g1 + g2 * (z * z)
             a0 += strength * g_zz
             a2 += strength * (k * k * j2 - g2 * rho2)
-            bb += 2.0 * strength * g2 * rho * z
+            bb += 2.0 * strength * g2 * (rho * z)
             cc += 2.0 * strength * (k * k * g + g_zz)
             cosine, sine = 1.0, 0.0
             if rho > 0.0:

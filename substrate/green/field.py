@@ -60,11 +60,12 @@ def reflected_field(table: ReflectedTable, points, sources, dipoles) -> np.ndarr
         rest = table.remainder_at(np.minimum(step * np.arange(count), table.box[0]), sums)
         rest = np.ascontiguousarray(rest.transpose(2, 1, 0))
         group = np.ascontiguousarray(points[here])
+        carriers = np.exp(1j * k * sums)
         field = np.zeros((len(here), 3), dtype=complex)
 
         def part(start: int, stop: int) -> None:
             _kernels.reflected_sum(
-                k, complex(table.beta), group[start:stop], sources, level, dipoles, rest, step, field[start:stop]
+                k, complex(table.beta), group[start:stop], sources, level, sums, carriers, dipoles, rest, step, field[start:stop]
             )
 
         share(len(here), part)

@@ -80,9 +80,11 @@ def tell(progress: Progress | None, grid: Grid, share_from: float, share_to: flo
     if progress is None:
         return None
     width = grid.done_after - grid.done_before
+    farthest = 0.0
 
     def on_step(products: int, residual: float) -> None:
-        part = min(1.0, max(0.0, np.log(max(residual, 1e-12)) / np.log(grid.problem.tolerance)))
+        nonlocal farthest  # the residual does not fall at every step
+        farthest = part = min(1.0, max(farthest, np.log(max(residual, 1e-12)) / np.log(grid.problem.tolerance)))
         done = grid.done_before + width * (share_from + (share_to - share_from) * part)
         progress(ProgressEvent("solving", done, f"grid {grid.number + 1}: {products} products, residual {residual:.1e}"))
 

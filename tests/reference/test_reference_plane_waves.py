@@ -124,10 +124,10 @@ def test_incident_and_transmitted_waves_keep_their_amplitude():
 def test_ellipsometry_of_silica_on_silicon(thickness, psi, delta):
     """70 degrees, 632.8 nm, sign of Delta as in handbooks: calculated with unrounded indices.
 
-    5e-4 degrees: five decimals in n and k move Psi by 1e-4 at most and Delta by 3e-4.
+    3e-4 degrees: five decimals in n and k, of which k of silicon moves Delta most.
     """
     found = ellipsometric_angles(LayerStack((1.0, SILICA, SILICON), (thickness,), 632.8), 70.0)
-    assert found == pytest.approx((psi, delta), abs=5e-4)
+    assert found == pytest.approx((psi, delta), abs=3e-4)
 
 
 @pytest.mark.parametrize(
@@ -195,15 +195,15 @@ def test_surface_plasmon(metal, dielectric, expected, length):
 def test_plasmon_resonance_through_a_thin_film(metal, dielectric, angle, least):
     """Prism of N-BK7, 50 nm of metal, 632.8 nm (Kretschmann's arrangement): angle and depth of the dip, calculated with unrounded indices.
 
-    The stated angle must be the minimum of R to 2e-4 degrees, R there equal to 2 %: five decimals of n, of a k of silver that is 0.05.
+    The stated angle must be the minimum of R to 1e-4 degrees and R there equal to 5e-4: n of silver, 0.05625, is given to 1e-4 of itself.
     """
     stack = LayerStack((BK7, metal, dielectric), (50.0,), 632.8)
     with mp.workdps(30):
         reflected = {step: float(abs(reflection(stack, BK7 * mp.sin(mp.radians(mp.mpf(angle) + step)), "p")) ** 2) for step in (-5e-4, 0.0, 5e-4)}
-    assert reflected[0.0] == pytest.approx(least, rel=0.02, abs=2e-6)
+    assert reflected[0.0] == pytest.approx(least, rel=5e-4)
     slope, curvature = (reflected[5e-4] - reflected[-5e-4]) / 1e-3, (reflected[5e-4] + reflected[-5e-4] - 2.0 * reflected[0.0]) / 2.5e-7
     assert curvature > 0.0
-    assert abs(slope / curvature) < 2e-4
+    assert abs(slope / curvature) < 1e-4
 
 
 @pytest.mark.parametrize(("angle", "s", "p"), [(45.0, 0.63661977, 1.0185916), (60.0, 0.33246383, 0.23127919)])
