@@ -72,10 +72,10 @@ class Scattering:
         return html_table(self.quantities(), (self.method, *self.warnings))
 
     def fields(self, points_nm) -> np.ndarray:
-        """Total E at points (n, 3), z >= 0, for unit incident amplitude: (waves, n, 3), one entry, two for unpolarized light. Finest grid."""
+        """Total E at points (n, 3), z >= 0 (any z without particles), for unit incident amplitude: (waves, n, 3), one entry, two for unpolarized light. Finest grid."""
         points = np.atleast_2d(np.asarray(points_nm, dtype=float))
         if not self._solutions:
-            return np.array([wave.field(points) for wave in self._waves])
+            return np.array([wave.field_anywhere(points) for wave in self._waves])
         table = viewing_table(self._filled.cells, self._layers, points)
         pairs = zip(self._solutions, self._waves)
         return np.array([total_field(solution, self._filled, table, wave.field, points) for solution, wave in pairs])
@@ -125,7 +125,7 @@ def scatter(
     layers = stack.at(light.wavelength_nm)
     waves = light.waves(stack)
     windows = collector_windows(collectors, layers)
-    spots = _checked_spots(spots_nm)
+    spots = _checked_spots(spots_nm, above_only=bool(particles))
     if not particles:
         return _bare(layers, waves, windows, spots)
     clearance = _clearance(particles, spots)
@@ -176,10 +176,11 @@ def collector_windows(collectors: Sequence[Collector], layers: Layers) -> dict[s
     return windows
 
 
-def _checked_spots(spots_nm) -> np.ndarray:
+def _checked_spots(spots_nm, above_only: bool) -> np.ndarray:
     spots = np.asarray(spots_nm, dtype=float).reshape(-1, 3) if len(spots_nm) else np.zeros((0, 3))
-    if not np.isfinite(spots).all() or (spots[:, 2] < 0.0).any():
-        raise InputError(Fault("spots_nm", spots_nm, "finite points (n, 3) with z >= 0"))
+    if not np.isfinite(spots).all() or (above_only and (spots[:, 2] < 0.0).any()):
+        allowed = "finite points (n, 3) with z >= 0 (with particles; without them any z)"
+        raise InputError(Fault("spots_nm", spots_nm, allowed))
     return spots
 
 
@@ -238,7 +239,7 @@ def stack_share(layers: Layers, work: float, absorbed: float, far: float, given_
 def _bare(layers, waves, windows, spots) -> Scattering:
     """No particle: nothing is scattered, the fields are those of the bare stack, exact to rounding."""
     zero = {name: Quantity(0.0, 0.0, "nm^2", text) for name, text in _DEFINITIONS.items() if name != "balance"}
-    values = np.mean([(np.abs(wave.field(spots)) ** 2).sum(axis=1) for wave in waves], axis=0) if len(spots) else []
+    values = np.mean([(np.abs(wave.field_anywhere(spots)) ** 2).sum(axis=1) for wave in waves], axis=0) if len(spots) else []
     found = tuple(Quantity(float(v), 1e-12 * float(v), "1", _spot_text(p)) for v, p in zip(values, spots))
     collected = {name: Quantity(0.0, 0.0, "nm^2", f"power scattered into {c.describe()}") for name, (c, *_) in windows.items()}
     balance = Quantity(0.0, 0.0, "1", _DEFINITIONS["balance"])

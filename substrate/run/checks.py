@@ -12,6 +12,7 @@ from substrate.run.schema import REQUIRED
 from substrate.run.series import Axis, point_count
 
 MOST_POINTS = 10_000
+_ONLY_ABOVE = "With particles, fields below the surface are not offered."
 _NEEDS = {  # question -> tables of which at least one must be there
     "cross sections": ("light",),
     "near field": ("light",),
@@ -151,10 +152,13 @@ def _asks(tables: Mapping) -> Iterator[Problem]:
         if (what in _PARTICLE_QUESTIONS or lone_light) and not tables["particle"]:
             yield Problem(f"{where}.what", what, "a question about a case with a [[particle]]", "Without a particle nothing is scattered.")
         if what == "near field":
-            yield from _near_field(where, ask)
+            yield from _near_field(where, ask, bool(tables["particle"]))
 
 
-def _near_field(where: str, ask: Mapping) -> Iterator[Problem]:
+def _near_field(where: str, ask: Mapping, with_particles: bool) -> Iterator[Problem]:
+    for number, point in enumerate(ask["points_nm"] or [], 1):
+        if with_particles and isinstance(point, list) and point[2] < 0.0:
+            yield Problem(f"{where}.points_nm[{number}]", point, "z at least 0", _ONLY_ABOVE)
     if ask["plane"] is None:
         if not ask["points_nm"]:
             yield Problem(where, REQUIRED, "points_nm = [[x, y, z], ...], or plane with size_nm, or both")
@@ -165,13 +169,13 @@ def _near_field(where: str, ask: Mapping) -> Iterator[Problem]:
     if ask["size_nm"] is None:
         yield Problem(f"{where}.size_nm", REQUIRED, "[width, height] of the plane in nm")
     if ask["plane"] == "xy":
-        if ask["at_nm"] is None or (isinstance(ask["at_nm"], float) and ask["at_nm"] <= 0.0):
+        if ask["at_nm"] is None or (with_particles and isinstance(ask["at_nm"], float) and ask["at_nm"] <= 0.0):
             yield Problem(f"{where}.at_nm", REQUIRED if ask["at_nm"] is None else ask["at_nm"], "the height of the plane in nm, above 0")
         return
     size, center = _numbers(ask["size_nm"]), _numbers(ask["center_nm"])
-    if len(size) == 2 and len(center) == 2 and center[1] - 0.5 * size[1] < 0.0:
+    if with_particles and len(size) == 2 and len(center) == 2 and center[1] - 0.5 * size[1] < 0.0:
         allowed = f"a plane above the surface: center_nm[2] at least {0.5 * size[1]:g}"
-        yield Problem(f"{where}.center_nm", ask["center_nm"], allowed, "Fields below the surface are not offered.")
+        yield Problem(f"{where}.center_nm", ask["center_nm"], allowed, _ONLY_ABOVE)
 
 
 def _points(axes: Sequence[Axis]) -> Iterator[Problem]:

@@ -258,8 +258,6 @@ def _vector_of_points(item: object, point: Key, key: Key) -> list[float]:
         x, y, z = _vector(item, point)
     except Refused:
         raise Refused(allowed_words(key)) from None
-    if z < 0.0:
-        raise Refused(allowed_words(key), "Fields below the surface are not offered.")
     return [x, y, z]
 
 

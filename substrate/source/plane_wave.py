@@ -106,6 +106,23 @@ class StackWave:
         return lateral[:, None] * field
 
 
+    def field_anywhere(self, points_nm):
+        """E at points (n, 3) above, in or below the stack; complex (n, 3). Light from below is worked out in the mirrored stack."""
+        import numpy as np
+
+        from substrate.medium.fresnel import plane_wave_field
+
+        points = np.atleast_2d(np.asarray(points_nm, dtype=float))
+        if self.side == "above":
+            return plane_wave_field(self.layers, self.q, self.azimuth_rad, self.amplitudes, points)
+        # a hair lower in the mirror, so that a point on an interface belongs to the layer above it here too
+        mirrored = points * [1.0, 1.0, -1.0] - [0.0, 0.0, sum(self.layers.thickness_nm) + 1e-9]
+        s_amplitude, p_amplitude = self.amplitudes
+        # p = k_hat x s turns over in the mirror
+        field = plane_wave_field(self.layers.flipped(), self.q, self.azimuth_rad, (s_amplitude, -p_amplitude), mirrored)
+        return field * [1.0, 1.0, -1.0]
+
+
 @dataclass(frozen=True)
 class HostModes:
     """Field in the host of unit s and p waves sent at the stack, for several in-plane wave numbers (arrays (n,)).

@@ -145,7 +145,7 @@ quick = "yes"
         (GOOD.replace(ASK, ""), "ask", "at least one"),
         (GOOD + "[[ask]]\nwhat = 'near field'\n", "ask[2]", "points_nm = [[x, y, z], ...], or plane with size_nm"),
         (GOOD + "[[ask]]\nwhat = 'near field'\npoints_nm = [0, 0, 1]\n", "ask[2].points_nm", "One point too stands in double brackets."),
-        (GOOD + "[[ask]]\nwhat = 'near field'\npoints_nm = [[0, 0, -1]]\n", "ask[2].points_nm", "below the surface"),
+        (GOOD + "[[ask]]\nwhat = 'near field'\npoints_nm = [[0, 0, -1]]\n", "ask[2].points_nm[1]", "below the surface"),
         (GOOD + "[[ask]]\nwhat = 'near field'\nplane = 'xz'\n", "ask[2].size_nm", "[width, height]"),
         (GOOD + "[[ask]]\nwhat = 'near field'\nplane = 'xy'\nsize_nm = [9, 9]\n", "ask[2].at_nm", "above 0"),
         (GOOD + "[[ask]]\nwhat = 'near field'\nplane = 'xz'\nsize_nm = [9, 9]\ncenter_nm = [0, 1]\n", "ask[2].center_nm", "at least 4.5"),

@@ -34,6 +34,19 @@ def test_light_from_below_is_the_flipped_stack_seen_from_above(angle):
         assert np.abs(wave.field(POINTS) - expected).max() < 1e-7
 
 
+@pytest.mark.parametrize("side", ["above", "below"])
+@pytest.mark.parametrize("polarization", ["s", "p"])
+def test_field_anywhere_joins_the_field_above_and_is_continuous(side, polarization):
+    """Above z = 0 both ways agree; tangential fields pass through every interface."""
+    (wave,) = PlaneWave(550.0, 35.0, 25.0, polarization, side).waves(STACK)
+    assert np.abs(wave.field_anywhere(POINTS) - wave.field(POINTS)).max() < 1e-10  # a shift of 1e-9 nm in the mirror
+    for z in wave.layers.interfaces_nm():
+        up, down = (wave.field_anywhere([[5.0, 3.0, z + step]])[0] for step in (1e-7, -1e-7))
+        assert np.abs(up[:2] - down[:2]).max() < 1e-7  # the step times a slope of order k
+    deep = wave.field_anywhere([[0.0, 0.0, -500.0]])[0]
+    assert np.linalg.norm(deep) > 1e-3
+
+
 def test_field_obeys_the_divergence_law():
     (wave,) = PlaneWave(550.0, 40.0, 25.0, "p").waves(STACK)
     step = 1e-3
