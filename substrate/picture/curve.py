@@ -1,24 +1,39 @@
-"""Quantities against the parameter of a series, power balances, convergence with the cell size, optical constants."""
+"""Quantities against the parameter of a series, power balances, optical constants."""
 
 from __future__ import annotations
 
+import textwrap
+from dataclasses import dataclass
+
+import matplotlib
 import numpy as np
 from matplotlib.figure import Figure
 
-from substrate.picture.style import COLOURS, FAINT, INK, MARKERS, label, new_figure, plain_axes
-from substrate.run.results import FAILED, PointResult, Results
+from substrate.picture.style import COLOURS, FAINT, INK, LINES, MAP, MARKERS, new_figure, plain_axes
+from substrate.picture.words import finite_error, label, number_of, parameter_value, parameter_words, quantity_text, quantity_words
+from substrate.quantity import Quantity
+from substrate.run.results import FAILED, NOT_CONVERGED, PointResult, Results
 
-# Quantities of one balance: shares of the last one.
+# Parts of one balance, and the whole that they add up to.
 BALANCES = {
     "cross_sections": (("absorbed", "up", "down", "guided", "stack"), "work"),
     "emission": (("up", "down", "guided", "particle", "stack"), "total"),
 }
 _ASIDE = ("balance",)
+_LOGARITHMIC_FROM = 100.0  # largest over smallest value
+_MOST_CURVES = 24
+_MANY = 30  # points of a curve whose markers become small
+_AXIS_WORDS = {"emission": "factor", "near_field": "|E|² / |E incident|²", "reflectance": "share of the incident power"}
 
 
-def number_of(value: object) -> float | None:
-    """A parameter as a number, None if it is a word."""
-    return float(value) if isinstance(value, (int, float)) and not isinstance(value, bool) else None
+@dataclass(frozen=True)
+class Curve:
+    """One curve: x (m,), y (m,), bars (m,) or None where no point has one."""
+
+    title: str
+    x: np.ndarray
+    y: np.ndarray
+    bars: np.ndarray | None
 
 
 def axis_parameter(results: Results) -> tuple[str | None, tuple[str, ...]]:
@@ -35,25 +50,53 @@ def axis_parameter(results: Results) -> tuple[str | None, tuple[str, ...]]:
     return along, tuple(name for name in names if name != along)
 
 
-def families(results: Results, ask: str) -> dict[str, list[tuple[str, str]]]:
-    """Quantities of an ask by unit: {unit: [(name, definition)]}."""
-    out: dict[str, list[tuple[str, str]]] = {}
-    seen = set()
+def quantities_by_unit(results: Results, ask: str) -> dict[str, list[str]]:
+    """Names of the quantities of an ask by unit, closures of balances left out."""
+    units: dict[str, str] = {}
     for point in results.points:
         for name, quantity in point.quantities.get(ask, {}).items():
-            if name not in seen and name.rpartition("/")[2] not in _ASIDE:
-                seen.add(name)
-                out.setdefault(quantity.unit, []).append((name, quantity.definition))
-    return out
+            if name.rpartition("/")[2] not in _ASIDE:
+                units.setdefault(name, quantity.unit)
+    return {unit: [name for name in units if units[name] == unit] for unit in dict.fromkeys(units.values())}
+
+
+def curves(results: Results, ask: str, names: list[str]) -> list[Curve]:
+    """One curve a quantity and combination of the further parameters; those that are zero everywhere are left out."""
+    along, others = axis_parameter(results)
+    groups: dict[str, list[PointResult]] = {}
+    for point in results.points:
+        words = ", ".join(parameter_value(name, point.parameters[name]) for name in others if name in point.parameters)
+        groups.setdefault(words, []).append(point)
+    found = []
+    for name in names:
+        for words, points in groups.items():
+            known = [(number_of(p.parameters[along]), p.quantities[ask][name]) for p in points if name in p.quantities.get(ask, {})]
+            known.sort(key=lambda pair: pair[0])
+            title = quantity_words(name) if len(names) > 1 or not words else ""
+            if any(quantity.value for _, quantity in known):
+                found.append(_curve(", ".join(part for part in (title, words) if part), known))
+    return found
+
+
+def _curve(title: str, known: list[tuple[float, Quantity]]) -> Curve:
+    bars = [np.nan if finite_error(q) is None else q.error for _, q in known]
+    x, y = np.array([x for x, _ in known]), np.array([q.value for _, q in known])
+    return Curve(title, x, y, None if np.all(np.isnan(bars)) else np.array(bars))
+
+
+def zero_everywhere(results: Results, ask: str, names: list[str]) -> list[str]:
+    """The quantities that a figure leaves out because they are zero at every point."""
+    values = {name: [p.quantities[ask][name].value for p in results.points if name in p.quantities.get(ask, {})] for name in names}
+    return [name for name in names if not any(values[name])]
 
 
 def curve_rows(results: Results, ask: str, names: list[str]) -> tuple[list[str], list[list]]:
-    """Header and rows of the data behind a curve: parameters, then value and error of each name."""
+    """Header and rows of the data behind a curve: parameters, status, then value and error of each name."""
     parameters = list(dict.fromkeys(name for point in results.points for name in point.parameters))
-    header = [*parameters, *(column for name in names for column in (name, f"{name} error"))]
+    header = [*parameters, "status", *(column for name in names for column in (name, f"{name} error"))]
     rows = []
     for point in results.points:
-        row: list = [point.parameters.get(name, "") for name in parameters]
+        row: list = [*(point.parameters.get(name, "") for name in parameters), point.status]
         for name in names:
             quantity = point.quantities.get(ask, {}).get(name)
             row += ["", ""] if quantity is None else [quantity.value, "" if quantity.error is None else quantity.error]
@@ -63,112 +106,106 @@ def curve_rows(results: Results, ask: str, names: list[str]) -> tuple[list[str],
 
 def draw_curve(results: Results, ask: str, unit: str, names: list[str]) -> Figure:
     """Quantities of one unit against the series parameter, bars where there are any; one curve for each value of further parameters."""
-    along, others = axis_parameter(results)
+    along, _ = axis_parameter(results)
+    found = curves(results, ask, names)
+    step = -(-len(found) // _MOST_CURVES)  # each step-th curve is drawn
     figure = new_figure(7.6, 4.4)
     axes = figure.add_subplot()
     plain_axes(axes)
-    groups: dict[str, list[PointResult]] = {}
-    for point in results.points:
-        if point.status != FAILED:
-            words = ", ".join(f"{name.rpartition('.')[2]} {point.parameters.get(name)}" for name in others)
-            groups.setdefault(words, []).append(point)
-    shown: list[float] = []
-    drawn = 0
-    for name in names:
-        for words, points in groups.items():
-            known = sorted(((number_of(p.parameters[along]), p.quantities[ask][name]) for p in points if name in p.quantities.get(ask, {})), key=lambda pair: pair[0])
-            if not known or not any(quantity.value for _, quantity in known):
-                continue
-            x, y = np.array([pair[0] for pair in known]), np.array([pair[1].value for pair in known])
-            bars = np.array([0.0 if q.error is None or not np.isfinite(q.error) else q.error for _, q in known])
-            title = name.replace("_", " ") + (f" ({words})" if words else "")
-            style = {"color": COLOURS[drawn % len(COLOURS)], "marker": MARKERS[drawn % len(MARKERS)], "markersize": 4, "linewidth": 1.4}
-            axes.errorbar(x, y, yerr=bars if bars.any() else None, label=title, capsize=2, **style)
-            shown += y.tolist()
-            drawn += 1
-    if shown and min(shown) > 0.0 and max(shown) > 100.0 * min(shown):
-        axes.set_yscale("log")
-    axes.set_xlabel(_parameter_label(along))
-    axes.set_ylabel(label(names[0].rpartition("/")[2] if len(names) == 1 else _family_word(ask, unit), unit))
-    figure.legend(loc="outside right upper", fontsize=8, frameon=False)
+    drawn = found[::step] if found else []
+    for curve, style in zip(drawn, _styles(len(drawn))):
+        size = 2.0 if len(curve.x) > _MANY else 4.0
+        axes.errorbar(curve.x, curve.y, yerr=curve.bars, label=curve.title, capsize=2, markersize=size, linewidth=1.4, **style)
+    _scales(axes, drawn)
+    _mark_points(axes, results, along)
+    axes.set_xlabel(label(*parameter_words(along)))
+    several = {"nm^2": "cross section", "ns": "lifetime"}.get(unit, _AXIS_WORDS.get(ask, "value"))
+    axes.set_ylabel(label(quantity_words(names[0]) if len(names) == 1 else several, unit))
+    if axes.get_legend_handles_labels()[0]:
+        title = f"each {step}th curve of {len(found)}" if step > 1 else None
+        figure.legend(loc="outside right upper", fontsize=8, frameon=False, title=title, title_fontsize=8)
     return figure
 
 
-def _family_word(ask: str, unit: str) -> str:
-    return {"nm^2": "cross section", "ns": "lifetime"}.get(unit, {"emission": "factor", "near_field": "|E|² / |E incident|²", "reflectance": "share"}.get(ask, "value"))
+def _styles(count: int) -> list[dict]:
+    """Colour, marker and dash of each curve: told apart by colour and marker, or in order of a colour map if there are many."""
+    if count <= len(COLOURS):
+        return [{"color": COLOURS[i], "marker": MARKERS[i]} for i in range(count)]
+    colours = matplotlib.colormaps[MAP](np.linspace(0.0, 0.92, count))
+    return [{"color": colours[i], "marker": MARKERS[i % len(MARKERS)], "linestyle": LINES[i % len(LINES)]} for i in range(count)]
 
 
-def _parameter_label(name: str) -> str:
-    """"light.wavelength_nm" -> "light: wavelength (nm)"."""
-    place, _, last = name.rpartition(".")
-    for ending, unit in (("_nm", "nm"), ("_deg", "deg"), ("_ns", "ns")):
-        if ending in last:
-            last = f"{last.replace(ending, '')} ({unit})"
-    return f"{place}: {last.replace('_', ' ')}" if place else last.replace("_", " ")
+def _scales(axes, drawn: list[Curve]) -> None:
+    """Logarithmic axes where all values are positive and span more than a factor of 100."""
+    for values, setter in (("x", axes.set_xscale), ("y", axes.set_yscale)):
+        numbers = np.concatenate([getattr(curve, values) for curve in drawn]) if drawn else np.zeros(1)
+        if numbers.min() > 0.0 and numbers.max() > _LOGARITHMIC_FROM * numbers.min():
+            setter("log")
+
+
+def _mark_points(axes, results: Results, along: str) -> None:
+    """A mark at the foot for each point that failed or did not converge."""
+    for status, marker, colour in ((FAILED, "x", COLOURS[1]), (NOT_CONVERGED, "^", COLOURS[4])):
+        places = sorted({number_of(point.parameters[along]) for point in results.points if point.status == status})
+        if places:
+            style = {"linestyle": "none", "marker": marker, "color": colour, "markersize": 7, "clip_on": False}
+            axes.plot(places, [0.0] * len(places), transform=axes.get_xaxis_transform(), label=status, **style)
+
+
+def balance_parts(point: PointResult, ask: str, prefix: str = "") -> list[tuple[str, Quantity]]:
+    """The parts of a balance that the point has."""
+    named = point.quantities[ask]
+    return [(part, named[f"{prefix}{part}"]) for part in BALANCES[ask][0] if f"{prefix}{part}" in named]
 
 
 def draw_balance(point: PointResult, ask: str, prefix: str = "") -> Figure:
     """Where the power goes: one bar a channel, as a share of the whole."""
-    parts, whole = BALANCES[ask]
+    whole = BALANCES[ask][1]
     named = point.quantities[ask]
-    total = named[f"{prefix}{whole}"].value
-    found = [(part, named[f"{prefix}{part}"]) for part in parts if f"{prefix}{part}" in named]
-    figure = new_figure(7.0, 0.45 * len(found) + 1.3)
+    total = named[f"{prefix}{whole}"]
+    found = balance_parts(point, ask, prefix)
+    figure = new_figure(7.0, 0.42 * len(found) + 1.4)
     axes = figure.add_subplot()
     plain_axes(axes)
-    shares = [100.0 * quantity.value / total if total else 0.0 for _, quantity in found]
-    errors = [0.0 if q.error is None or not total else abs(100.0 * q.error / total) for _, q in found]
+    unit = 100.0 / total.value if total.value else 0.0
+    shares = [unit * quantity.value for _, quantity in found]
+    errors = [abs(unit) * (finite_error(quantity) or 0.0) for _, quantity in found]
     places = np.arange(len(found))[::-1]
     axes.barh(places, shares, xerr=errors if any(errors) else None, color=COLOURS[0], ecolor=INK, capsize=3, height=0.6)
     axes.set_yticks(places, [part for part, _ in found])
     axes.set_xlabel(f"share of the {whole} (%)")
-    reach = max([abs(s) + e for s, e in zip(shares, errors)] + [1.0])
-    for place, share, error in zip(places, shares, errors):
-        axes.text(max(share, 0.0) + error + 0.015 * reach, place, f"{share:.3g} %", va="center", fontsize=8)
-    axes.set_xlim(min([0.0, *(s - e for s, e in zip(shares, errors))]), 1.15 * reach)
+    reach = max([abs(share) + error for share, error in zip(shares, errors)] + [1.0])
+    for place, share, error, (_, quantity) in zip(places, shares, errors, found):
+        missing = ", no error bar" if finite_error(quantity) is None else ""
+        axes.text(max(share, 0.0) + error + 0.015 * reach, place, f"{share:.3g} %{missing}", va="center", fontsize=8)
+    axes.set_xlim(min([0.0, *(s - e for s, e in zip(shares, errors))]), 1.28 * reach)
+    closure = named.get(f"{prefix}balance")
+    words = f"{whole} = {quantity_text(total)}" + (f"; closure {quantity_text(closure)}" if closure else "")
+    axes.set_title(words, fontsize=9, color=FAINT)
     return figure
 
 
-def convergence_names(point: PointResult) -> list[str]:
-    """Quantities with a series of grids behind them."""
-    ending = "/values"
-    return [name[len("convergence/") : -len(ending)] for name in point.arrays if name.startswith("convergence/") and name.endswith(ending)]
-
-
-def draw_convergence(point: PointResult, names: list[str]) -> Figure:
-    """Values over the extrapolated one against the cell size, the quadratic through them, and the answer with its bar at zero."""
-    figure = new_figure(7.6, 4.2)
-    axes = figure.add_subplot()
-    plain_axes(axes)
-    for number, name in enumerate(names):
-        folder = f"convergence/{name}"
-        cell, values, fit = (np.asarray(point.arrays[f"{folder}/{part}"].values, dtype=float) for part in ("cell_nm", "values", "fit"))
-        answer, bar = fit[0], point.arrays[f"{folder}/fit"].error or 0.0
-        if answer == 0.0:
-            continue
-        colour, marker = COLOURS[number % len(COLOURS)], MARKERS[number % len(MARKERS)]
-        axes.plot(cell, values / answer, marker=marker, linestyle="none", markersize=5, color=colour, label=name.replace("_", " "))
-        h = np.linspace(0.0, cell.max(), 100)
-        axes.plot(h, (fit[0] + fit[1] * h + fit[2] * h * h) / answer, color=colour, linewidth=1.0)
-        axes.errorbar([0.006 * cell.max() * number], [1.0], yerr=[abs(bar / answer)], color=colour, capsize=4, linewidth=1.6)
-    axes.set_xlim(left=-0.03 * axes.get_xlim()[1])
-    axes.set_xlabel("cell size (nm); the bars at zero are those of the answers")
-    axes.set_ylabel("value / extrapolated value")
-    figure.legend(loc="outside right upper", fontsize=8, frameon=False)
-    return figure
+def balance_rows(point: PointResult, ask: str, prefix: str = "") -> tuple[list[str], list[list]]:
+    """Header and rows of the data behind the bars: the parts, the whole, the closure."""
+    named = point.quantities[ask]
+    rows = [*balance_parts(point, ask, prefix), *((name, named[prefix + name]) for name in (BALANCES[ask][1], "balance") if prefix + name in named)]
+    return ["quantity", "value", "error", "unit"], [[name, q.value, "" if q.error is None else q.error, q.unit] for name, q in rows]
 
 
 def draw_material(name: str, table, citation: str) -> Figure:
     """n and k of a table (n, 3): wavelength nm, n, k."""
     nm, n, k = np.asarray(table, dtype=float).T
-    figure = new_figure(7.0, 4.0)
+    figure = new_figure(7.0, 4.2)
     axes = figure.add_subplot()
     plain_axes(axes)
-    axes.plot(nm, n, color=COLOURS[0], label="n")
+    dots = {"marker": "o", "markersize": 3} if len(nm) <= 2 * _MANY else {}
+    axes.plot(nm, n, color=COLOURS[0], label="n", **dots)
     if k.any():
-        axes.plot(nm, k, color=COLOURS[1], linestyle="--", label="k")
+        axes.plot(nm, k, color=COLOURS[1], linestyle="--", label="k", **dots)
+    if nm.max() > 10.0 * nm.min():
+        axes.set_xscale("log")
     axes.set_xlabel("vacuum wavelength (nm)")
     axes.set_ylabel("refractive index n + ik")
     figure.legend(loc="outside right upper", frameon=False)
-    axes.set_title(f"{name}\n{citation[:95]}{'...' if len(citation) > 95 else ''}", fontsize=8, color=FAINT)
+    axes.set_title(f"{name}\n{textwrap.fill(citation, 95)}", fontsize=8, color=FAINT)
     return figure

@@ -4,96 +4,132 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator
+from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 from matplotlib.figure import Figure
 
+from substrate.picture.convergence import convergence_rows, draw_convergence, least_certain
 from substrate.picture.curve import (
     BALANCES,
     axis_parameter,
-    convergence_names,
+    balance_rows,
     curve_rows,
     draw_balance,
-    draw_convergence,
     draw_curve,
     draw_material,
-    families,
+    quantities_by_unit,
+    zero_everywhere,
 )
-from substrate.picture.field_map import draw_field_map
-from substrate.picture.pattern import draw_pattern_cuts, draw_pattern_discs
-from substrate.picture.sketch import draw_sketch
+from substrate.picture.field_map import draw_field_map, map_rows
+from substrate.picture.pattern import cut_rows, draw_pattern_cuts, draw_pattern_discs, pattern_rows
+from substrate.picture.sketch import draw_sketch, sketch_rows
 from substrate.picture.style import save, write_csv
+from substrate.picture.words import ask_words, number_of, point_words, quantity_words, value_at
 from substrate.run.results import FAILED, PointResult, Results, Sketch
 
-MOST_POINTS = 6  # maps and patterns of at most so many points of a series
+MOST_POINTS = 6  # maps and patterns of at most so many points of a series, spread evenly over it
+SAMPLE, ANSWERS, BALANCE, FIELDS, CONVERGENCE = "sample", "answers", "balance", "fields", "convergence"
 
 
-def figures(results: Results) -> Iterator[tuple[str, str, Figure, tuple[list[str], list] | None]]:
-    """(file name without ending, caption, figure, (header, rows) of its data or None), one at a time."""
+@dataclass(frozen=True)
+class Picture:
+    """A figure with its file name (no ending), what it shows, the part of the report it belongs to, and its data."""
+
+    stem: str
+    caption: str
+    part: str
+    figure: Figure
+    header: list
+    rows: list
+
+
+def pictures(results: Results) -> Iterator[Picture]:
+    """Every figure of a run, one at a time, in the order of the report."""
+    series = len(results.points) > 1
     if results.sketch is not None:
-        yield "sample", "The sample to scale.", draw_sketch(results.sketch), None
-    along, _ = axis_parameter(results)
+        words = "The sample to scale" + (", at the first point of the series." if series else ".")
+        yield Picture("sample", words, SAMPLE, draw_sketch(results.sketch), *sketch_rows(results.sketch))
     good = [point for point in results.points if point.status != FAILED]
-    if along is not None and len(good) > 1:
-        for ask in dict.fromkeys(ask for point in good for ask in point.quantities):
-            for unit, members in families(results, ask).items():
-                names = [name for name, _ in members]
-                words = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for", "reflectance": "Shares of the incident power"}.get(ask, ask)
-                stem = f"{ask}_{_file_word(unit)}" if unit != "1" else ask
-                yield stem, f"{words} over the series.", draw_curve(results, ask, unit, names), curve_rows(results, ask, names)
-    for number, point in enumerate(good[:MOST_POINTS], 1):
-        yield from _of_point(point, number, len(good) > 1)
+    if axis_parameter(results)[0] is not None and len(good) > 1:
+        yield from _curves(results)
+    if not series:
+        for point in good:
+            yield from _balances(point)
+    for number, point in _spread(good):
+        yield from _fields(results, point, f"_point_{number}" if series else "", f" ({point_words(point)})" if series else "")
+    found = least_certain(results)
+    if found is not None:
+        where = f" Of the series, the point with the widest bars is shown: {point_words(found)}." if series else ""
+        words = f"Values on the series of grids, and at zero the answers with their bars.{where}"
+        yield Picture("convergence", words, CONVERGENCE, draw_convergence(found), *convergence_rows(found))
 
 
-def _of_point(point: PointResult, number: int, several: bool) -> Iterator:
-    ending = f"_point_{number}" if several else ""
-    where = f" ({point.label})" if several and point.label else ""
+def _curves(results: Results) -> Iterator[Picture]:
+    """One figure an ask and unit; one a quantity if further parameters make a family of each."""
+    family = len(axis_parameter(results)[1]) > 0
+    for ask in dict.fromkeys(ask for point in results.points for ask in point.quantities):
+        for unit, members in quantities_by_unit(results, ask).items():
+            zero = zero_everywhere(results, ask, members)
+            shown = [name for name in members if name not in zero]
+            without = f" Zero at every point: {', '.join(quantity_words(name) for name in zero)}." if zero else ""
+            for names in [[name] for name in shown] if family else [shown] if shown else []:
+                stem = file_word("_".join([ask, names[0]] if family else [ask] if unit == "1" else [ask, unit.replace("^", "")]))
+                words = f"{ask_words(ask)} over the series{': ' + quantity_words(names[0]) if family else ''}.{without}"
+                yield Picture(stem, words, ANSWERS, draw_curve(results, ask, unit, names), *curve_rows(results, ask, names))
+
+
+def _balances(point: PointResult) -> Iterator[Picture]:
     for ask, (_, whole) in BALANCES.items():
         for name in point.quantities.get(ask, {}):
             prefix, slash, last = name.rpartition("/")
-            if last == whole and not several:
+            if last == whole:
+                where = f" of {prefix.replace('_', ' ')}" if prefix else ""
+                stem = file_word("_".join(part for part in ("power", prefix, ask) if part))
                 figure = draw_balance(point, ask, prefix + slash)
-                yield f"power_{_file_word(prefix)}{ask}{ending}", f"Where the power goes{where}.", figure, None
-    for name in point.arrays:
-        if name.endswith("field_map_e2"):
-            prefix = name[: -len("field_map_e2")]
-            yield f"{_file_word(prefix)}field_map{ending}", f"|E|² in the plane{where}.", draw_field_map(point, prefix), _map_rows(point, prefix)
-        elif name == "pattern" or name.endswith("/pattern"):
-            prefix = name[: -len("pattern")]
-            rows = _pattern_rows(point, prefix)
-            yield f"{_file_word(prefix)}pattern_cuts{ending}", f"Far-field pattern{where}.", draw_pattern_cuts(point, prefix), rows
-            yield f"{_file_word(prefix)}pattern_discs{ending}", f"Far-field pattern over direction cosines{where}.", draw_pattern_discs(point, prefix), None
-    names = [name for name in convergence_names(point) if np.any(np.asarray(point.arrays[f"convergence/{name}/values"].values) != 0.0)]
-    if names and not several:
-        words = "Values on the series of grids, and the answer at cells of size zero."
-        yield f"convergence{ending}", words, draw_convergence(point, names), _convergence_rows(point, names)
+                yield Picture(stem, f"Where the power{where} goes.", BALANCE, figure, *balance_rows(point, ask, prefix + slash))
 
 
-def _file_word(text: str) -> str:
+def _spread(points: list[PointResult]) -> Iterator[tuple[int, PointResult]]:
+    """At most MOST_POINTS of the points that have maps or patterns, with their numbers counted from 1."""
+    drawn = [(number, point) for number, point in enumerate(points, 1) if any(_is_field(name) for name in point.arrays)]
+    if len(drawn) <= MOST_POINTS:
+        return iter(drawn)
+    return iter([drawn[i] for i in np.linspace(0, len(drawn) - 1, MOST_POINTS).round().astype(int)])
+
+
+def _is_field(name: str) -> bool:
+    return name.rpartition("/")[2] in ("field_map_e2", "pattern")
+
+
+def _fields(results: Results, point: PointResult, ending: str, where: str) -> Iterator[Picture]:
+    """Maps and patterns of one point."""
+    for name in filter(_is_field, point.arrays):
+        prefix, slash, last = name.rpartition("/")
+        stem, prefix = file_word(f"{prefix}_" if prefix else ""), prefix + slash
+        if last == "field_map_e2":
+            plane = point.arrays[name].attributes.get("plane", "")
+            words = f"|E|² over |E|² of the incident wave alone, plane {plane}, finest grid{where}."
+            yield Picture(f"{stem}field_map{ending}", words, FIELDS, draw_field_map(point, prefix), *map_rows(point, prefix))
+            continue
+        plane_deg = incidence_deg(results, point) if point.arrays[name].unit == "nm^2/sr" else None
+        of = f" of {prefix[:-1].replace('_', ' ')}" if prefix else ""
+        words = f"Far-field pattern{of}, finest grid{where}."
+        cuts = draw_pattern_cuts(point, prefix, plane_deg)
+        yield Picture(f"{stem}pattern_cuts{ending}", words, FIELDS, cuts, *cut_rows(point, prefix, plane_deg))
+        words = f"Far-field pattern{of} over the direction cosines, finest grid{where}."
+        yield Picture(f"{stem}pattern_discs{ending}", words, FIELDS, draw_pattern_discs(point, prefix), *pattern_rows(point, prefix))
+
+
+def incidence_deg(results: Results, point: PointResult) -> float:
+    """Azimuth of the light at a point: that of the series, else that of the case, else 0."""
+    return number_of(value_at(results, point, "light", "azimuth_deg")) or 0.0
+
+
+def file_word(text: str) -> str:
+    """Text as a part of a file name."""
     return re.sub(r"[^A-Za-z0-9_]+", "_", text)
-
-
-def _map_rows(point: PointResult, prefix: str) -> tuple[list[str], list]:
-    found = point.arrays[f"{prefix}field_map_e2"]
-    u, v = (np.asarray(point.arrays[f"{prefix}field_map_{name}_nm"].values) for name in "uv")
-    grid = np.meshgrid(u, v, indexing="ij")
-    header = [f"{axis[0]} ({axis[1]})" for axis in found.axes] + ["|E|^2 / |E incident|^2"]
-    return header, np.column_stack([grid[0].ravel(), grid[1].ravel(), np.asarray(found.values).ravel()]).tolist()
-
-
-def _pattern_rows(point: PointResult, prefix: str) -> tuple[list[str], list]:
-    found = point.arrays[f"{prefix}pattern"]
-    polar, azimuth = (np.asarray(point.arrays[f"{prefix}pattern_{name}_deg"].values) for name in ("polar", "azimuth"))
-    grid = np.meshgrid(polar, azimuth, indexing="ij")
-    rows = np.column_stack([grid[0].ravel(), grid[1].ravel(), np.asarray(found.values).ravel()]).tolist()
-    return ["polar (deg)", "azimuth (deg)", f"pattern ({found.unit})"], rows
-
-
-def _convergence_rows(point: PointResult, names: list[str]) -> tuple[list[str], list]:
-    cell = np.asarray(point.arrays[f"convergence/{names[0]}/cell_nm"].values)
-    columns = [np.asarray(point.arrays[f"convergence/{name}/values"].values) for name in names]
-    return ["cell (nm)", *names], np.column_stack([cell, *columns]).tolist()
 
 
 def save_figures(results: Results, folder) -> list[Path]:
@@ -101,10 +137,9 @@ def save_figures(results: Results, folder) -> list[Path]:
     folder = Path(folder)
     folder.mkdir(parents=True, exist_ok=True)
     written = []
-    for stem, _, figure, data in figures(results):
-        written.append(save(figure, folder / f"{stem}.png"))
-        if data is not None:
-            written.append(write_csv(folder / f"{stem}.csv", *data))
+    for picture in pictures(results):
+        written.append(save(picture.figure, folder / f"{picture.stem}.png"))
+        written.append(write_csv(folder / f"{picture.stem}.csv", picture.header, picture.rows))
     return written
 
 

@@ -1,4 +1,4 @@
-"""The one-file report: question, answers with bars, figures, balance, guards, cautions, definitions, the case. No outside links."""
+"""The one-file report: question, answers with bars, figures, balance, convergence, warnings, cautions, the case. No outside links."""
 
 from __future__ import annotations
 
@@ -8,16 +8,16 @@ from collections.abc import Iterable
 from html import escape
 from pathlib import Path
 
-from matplotlib.figure import Figure
-
-from substrate.picture.figure import figures
+from substrate.picture.cautions import cautions
+from substrate.picture.figure import ANSWERS, BALANCE, CONVERGENCE, FIELDS, MOST_POINTS, SAMPLE, Picture, pictures
+from substrate.picture.words import ask_words, point_words, quantity_text, quantity_words
 from substrate.quantity import Quantity
-from substrate.run.results import FINISHED, PointResult, Results
+from substrate.run.results import FAILED, FINISHED, PointResult, Results
 
 _STYLE = """
 :root { color-scheme: light; }
 body { font: 16px/1.5 Georgia, 'Times New Roman', serif; color: #222; background: #fff; max-width: 58rem; margin: 2rem auto; padding: 0 1rem; }
-h1 { font-size: 1.7rem; line-height: 1.2; margin-bottom: .2rem; }
+h1 { font-size: 1.7rem; line-height: 1.2; margin-bottom: .2rem; overflow-wrap: anywhere; }
 h2 { font-size: 1.15rem; margin: 2.2rem 0 .6rem; border-bottom: 1px solid #bbb; padding-bottom: .2rem; }
 h3 { font-size: 1rem; margin: 1.2rem 0 .4rem; }
 .small { color: #666; font-size: .85rem; }
@@ -25,24 +25,25 @@ h3 { font-size: 1rem; margin: 1.2rem 0 .4rem; }
 table { border-collapse: collapse; width: 100%; font-size: .92rem; }
 th, td { text-align: left; vertical-align: top; padding: .3rem .8rem .3rem 0; border-bottom: 1px solid #e3e3e3; }
 td.value { white-space: nowrap; font-variant-numeric: tabular-nums; font-weight: bold; }
-td.words { color: #555; font-size: .85rem; }
+td.words { color: #555; font-size: .85rem; min-width: 14rem; }
 figure { margin: 1.2rem 0; break-inside: avoid; }
 figure img { max-width: 100%; height: auto; }
 figcaption { color: #555; font-size: .85rem; }
 pre { background: #f6f6f3; padding: 1rem; overflow-x: auto; font-size: .8rem; line-height: 1.35; }
 .guard { border-left: 4px solid #D55E00; padding: .2rem 0 .2rem .8rem; margin: .5rem 0; }
 .caution { border-left: 4px solid #0072B2; padding: .2rem 0 .2rem .8rem; margin: .5rem 0; }
-@media print { body { margin: 0; max-width: none; font-size: 11pt; } h2 { break-after: avoid; } }
+@media print {
+  body { margin: 0; max-width: none; font-size: 11pt; } h2, h3 { break-after: avoid; } tr { break-inside: avoid; }
+  .scroll, pre { overflow: visible; } pre { white-space: pre-wrap; } td.value { white-space: normal; }
+}
 """
-
-_ASKS = {"cross_sections": "Cross sections", "emission": "Emission", "near_field": "Field at the points asked for", "far_field": "Far field", "reflectance": "Plane stack"}
 
 _CONVENTIONS = (
     "Time factor exp(-i omega t), index n + ik with k at least 0. Lengths in nm, vacuum wavelengths too; angles in degrees. z points up, z = 0 "
     "is the top of the stack, the host is above. Cross sections are powers over the irradiance of the incident wave alone, taken normal to its "
     "own direction. Decay-rate factors are powers over that of the same emitter in the unbounded host. A bar is the half width within which "
     "the exact solution of the stated model is expected: cells of size zero, the residual of the iteration and the error of the reflected "
-    "tensor; it says nothing of the materials' constants or of the sample's shape."
+    "tensor; it says nothing of the materials' constants or of the sample's shape. A number without a unit is a ratio."
 )
 
 
@@ -56,14 +57,19 @@ def write_report(results: Results, path) -> Path:
 def report_html(results: Results) -> str:
     """The page as text."""
     title = escape(results.title or "Results")
-    count = len(results.points)
+    figures: dict[str, str] = {}
+    for picture in pictures(results):
+        figures[picture.part] = figures.get(picture.part, "") + _figure(picture)
     parts = [
-        f"<!DOCTYPE html><html lang='en'><head><meta charset='utf-8'><meta name='viewport' content='width=device-width, initial-scale=1'>"
+        "<!DOCTYPE html><html lang='en'><head><meta charset='utf-8'><meta name='viewport' content='width=device-width, initial-scale=1'>",
         f"<title>{title}</title><style>{_STYLE}</style></head><body>",
-        f"<h1>{title}</h1><p class='small'>substrate {escape(results.version)}, {escape(results.created)}, {count} point{'s' if count != 1 else ''}</p>",
-        _section("Answer", _answers(results)),
-        _section("Figures", "".join(_figure(words, figure) for _, words, figure, _ in figures(results))),
-        _section("Guards", _guards(results)),
+        f"<h1>{title}</h1>{_head(results)}",
+        _section("Answer", _answers(results) + figures.get(ANSWERS, "")),
+        _section("Sample", figures.get(SAMPLE, "")),
+        _section("Power balance", _balance_words(results) + figures.get(BALANCE, "")),
+        _section("Fields and patterns", _left_out(results) + figures.get(FIELDS, "")),
+        _section("Convergence", figures.get(CONVERGENCE, "")),
+        _section("Warnings", _warnings(results)),
         _section("Cautions", "".join(f"<p class='caution'>{escape(text)}</p>" for text in cautions(results))),
         _section("How it was computed", _methods(results)),
         _section("Materials", _materials(results)),
@@ -78,20 +84,36 @@ def _section(title: str, body: str) -> str:
     return f"<h2>{title}</h2>{body}" if body else ""
 
 
+def _head(results: Results) -> str:
+    """Version, date, number of points, and whether some are missing or bad."""
+    count = len(results.points)
+    words = f"<p class='small'>substrate {escape(results.version)}, {escape(results.created)}, {count} point{'s' if count != 1 else ''}</p>"
+    if not results.complete:
+        words += f"<p class='guard'>Unfinished: {count} of {results.planned_points} points are there.</p>"
+    bad = sum(point.status != FINISHED for point in results.points)
+    if bad and count > 1:
+        words += f"<p class='guard'>{bad} of {count} points failed or did not converge; the reasons stand below the answers.</p>"
+    return words
+
+
+# ---- answers
+
+
 def _answers(results: Results) -> str:
-    if len(results.points) == 1:
-        return _one_point(results.points[0])
-    return _series(results)
+    if not results.points:
+        return "<p>No point is finished.</p>"
+    return _one_point(results.points[0]) if len(results.points) == 1 else _series(results)
 
 
 def _one_point(point: PointResult) -> str:
-    out = [] if point.status == FINISHED else [f"<p class='guard'>{escape(point.status)}: {escape(point.message)}</p>"]
+    out = [] if point.status == FINISHED else [_reason(point)]
     for ask, named in point.quantities.items():
         rows = "".join(
-            f"<tr><td>{_name(name)}</td><td class='value'>{_value(quantity)}</td><td class='words'>{escape(quantity.definition)}</td></tr>"
+            f"<tr><td>{escape(quantity_words(name))}</td><td class='value'>{_value(quantity)}</td>"
+            f"<td class='words'>{escape(quantity.definition)}</td></tr>"
             for name, quantity in named.items()
         )
-        out.append(f"<h3>{_ASKS.get(ask, escape(ask))}</h3><div class='scroll'><table><tr><th>quantity</th><th>value</th><th>definition</th></tr>{rows}</table></div>")
+        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('quantity', 'value', 'definition'), rows)}")
     return "".join(out)
 
 
@@ -99,86 +121,105 @@ def _series(results: Results) -> str:
     """One table an ask: points down, quantities across; the definitions below, once."""
     out = []
     for ask in dict.fromkeys(ask for point in results.points for ask in point.quantities):
-        names = list(dict.fromkeys(name for point in results.points for name in point.quantities.get(ask, {})))
-        head = "".join(f"<th>{_name(name)}</th>" for name in names)
-        rows = "".join(_series_row(point, ask, names) for point in results.points)
-        words = {}
+        definitions: dict[str, str] = {}
         for point in results.points:
             for name, quantity in point.quantities.get(ask, {}).items():
-                words.setdefault(name, quantity.definition)
-        notes = "".join(f"<tr><td>{_name(name)}</td><td class='words'>{escape(text)}</td></tr>" for name, text in words.items())
-        out.append(f"<h3>{_ASKS.get(ask, escape(ask))}</h3><div class='scroll'><table><tr><th>point</th>{head}</tr>{rows}</table></div>")
-        out.append(f"<details open><summary class='small'>definitions</summary><table>{notes}</table></details>")
-    bad = [point for point in results.points if point.status != FINISHED]
-    out += [f"<p class='guard'>{escape(point.label)}: {escape(point.status)}. {escape(point.message)}</p>" for point in bad]
-    return "".join(out)
+                definitions.setdefault(name, quantity.definition)
+        rows = "".join(_series_row(point, ask, definitions) for point in results.points)
+        notes = "".join(
+            f"<tr><td>{escape(quantity_words(name))}</td><td class='words'>{escape(text)}</td></tr>" for name, text in definitions.items()
+        )
+        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('point', *map(quantity_words, definitions)), rows)}")
+        out.append(f"<h3>What they mean</h3>{_table(('quantity', 'definition'), notes)}")
+    return "".join(out) + "".join(_reason(point) for point in results.points if point.status != FINISHED)
 
 
 def _series_row(point: PointResult, ask: str, names: Iterable[str]) -> str:
     named = point.quantities.get(ask, {})
-    cells = "".join(f"<td class='value'>{_value(named[name]) if name in named else escape(point.status)}</td>" for name in names)
-    return f"<tr><td>{escape(point.label)}</td>{cells}</tr>"
+    missing = "-" if point.status == FINISHED else escape(point.status)
+    cells = "".join(f"<td class='value'>{_value(named[name]) if name in named else missing}</td>" for name in names)
+    place = point_words(point) + (f" ({point.status})" if point.status != FINISHED else "")
+    return f"<tr><td>{escape(place)}</td>{cells}</tr>"
 
 
-def _name(name: str) -> str:
-    return escape(name.replace("_", " ").replace("/", ": "))
+def _reason(point: PointResult) -> str:
+    words = ": ".join(text for text in (point_words(point), point.status) if text)
+    return f"<p class='guard'>{escape(words)}. {escape(point.message)}</p>"
 
 
 def _value(quantity: Quantity) -> str:
-    return escape(str(quantity)).replace("nm^2", "nm²")
+    return escape(quantity_text(quantity))
 
 
-def _figure(words: str, figure: Figure) -> str:
+def _table(heads: Iterable[str], rows: str) -> str:
+    head = "".join(f"<th>{escape(words)}</th>" for words in heads)
+    return f"<div class='scroll'><table><tr>{head}</tr>{rows}</table></div>"
+
+
+# ---- figures and what is said about them
+
+
+def _figure(picture: Picture) -> str:
     buffer = io.BytesIO()
-    figure.savefig(buffer, format="png", dpi=130)
+    picture.figure.savefig(buffer, format="png", dpi=130)
     data = base64.b64encode(buffer.getvalue()).decode("ascii")
-    return f"<figure><img alt='{escape(words)}' src='data:image/png;base64,{data}'><figcaption>{escape(words)}</figcaption></figure>"
+    words = escape(picture.caption)
+    return f"<figure><img alt='{words}' src='data:image/png;base64,{data}'><figcaption>{words}</figcaption></figure>"
 
 
-def _guards(results: Results) -> str:
-    found = list(dict.fromkeys(text for point in results.points for text in point.warnings))
-    if not found:
-        return "<p>None was raised.</p>"
-    return "".join(f"<p class='guard'>{escape(text)}</p>" for text in found)
+def _balance_words(results: Results) -> str:
+    """The closure of each balance: at one point as it is, of a series the largest."""
+    found: dict[tuple[str, str], list[tuple[PointResult, Quantity]]] = {}
+    for point in results.points:
+        for ask, named in point.quantities.items():
+            for name, quantity in named.items():
+                if name.rpartition("/")[2] == "balance":
+                    found.setdefault((ask, name), []).append((point, quantity))
+    out = []
+    for (ask, name), closures in found.items():
+        point, worst = max(closures, key=lambda pair: abs(pair[1].value))
+        where = "" if len(closures) == 1 else f", the largest of {len(closures)} points, at {point_words(point)}"
+        words = f"{ask_words(ask)}, {quantity_words(name)}: closure {quantity_text(worst)}{where}. Definition: {worst.definition}."
+        out.append(f"<p>{escape(words)}</p>")
+    return "".join(out)
 
 
-def cautions(results: Results) -> list[str]:
-    """What the reader must know before acting on the numbers, as far as it concerns this case."""
-    asks = {ask for point in results.points for ask in point.quantities} | {"near_field" for p in results.points if any("field_map" in n for n in p.arrays)}
-    names = {name.lower() for name in results.materials}
-    out = [
-        "The model is linear and uses local bulk optical constants: no heating, bleaching, saturation or damage, and no tunnelling or non-local "
-        "response, which matter in gaps of about a nanometre and in films and particles of a few."
-    ]
-    if results.sketch is not None and results.sketch.light is not None:
-        out.append(
-            "Light powers and intensities here are model inputs and no laser-safety calculation: follow IEC 60825-1 or ANSI Z136.1 and the local "
-            "laser safety officer. Focused light comes back from wafers and mirrors into eyepieces and cameras."
-        )
-    if results.sketch is not None and results.sketch.outlines:
-        out.append("Handle nanoparticles by local rules; NIOSH 2012-147 is a general guide for laboratories.")
-    if "cross_sections" in asks and any("silicon" in name for name in names):
-        out.append(
-            "A scattering signal is no basis for accepting or rejecting a wafer without a calibration with certified spheres (SEMI M53); sizes "
-            "found from it are sphere-equivalent ones."
-        )
-    if "near_field" in asks:
-        out.append("The largest value of a map depends on the grid at sharp corners: take the values at stated points, which have bars.")
-    if "emission" in asks:
-        out.append("Lifetimes and yields assume that the intrinsic rates of the emitter do not change with its surroundings.")
-    return out
+def _left_out(results: Results) -> str:
+    drawn = sum(any(name.rpartition("/")[2] in ("field_map_e2", "pattern") for name in p.arrays) for p in results.points if p.status != FAILED)
+    if drawn <= MOST_POINTS:
+        return ""
+    return f"<p class='small'>Maps and patterns of {MOST_POINTS} of {drawn} points; those of all points are in the results file.</p>"
+
+
+# ---- warnings, methods, materials
+
+
+def _warnings(results: Results) -> str:
+    """Each warning once, with the number of points that raised it."""
+    counts: dict[str, int] = {}
+    for point in results.points:
+        for text in dict.fromkeys(point.warnings):
+            counts[text] = counts.get(text, 0) + 1
+    total = len(results.points)
+    rows = [text if total == 1 else f"{text} ({count} of {total} points)" for text, count in counts.items()]
+    return "".join(f"<p class='guard'>{escape(text)}</p>" for text in rows) or "<p>None was raised.</p>"
 
 
 def _methods(results: Results) -> str:
+    """Points and time of each method."""
+    found: dict[str, list[float]] = {}
+    for point in results.points:
+        found.setdefault(point.method or "-", []).append(point.seconds)
     rows = "".join(
-        f"<tr><td>{escape(point.label) or 'the point'}</td><td>{escape(point.method)}</td><td class='value'>{point.seconds:.3g} s</td></tr>" for point in results.points
+        f"<tr><td>{escape(method)}</td><td>{len(seconds)}</td><td class='value'>{sum(seconds):.3g} s</td></tr>" for method, seconds in found.items()
     )
-    return f"<div class='scroll'><table><tr><th>point</th><th>method</th><th>time</th></tr>{rows}</table></div>"
+    return _table(("method", "points", "time in all"), rows) if rows else ""
 
 
 def _materials(results: Results) -> str:
     rows = []
     for name, used in results.materials.items():
-        span = "a constant" if used.range_nm is None else f"{used.range_nm[0]:g} to {used.range_nm[1]:g} nm"
-        rows.append(f"<tr><td>{escape(name)}</td><td>{span}</td><td class='words'>{escape(used.citation)}. {escape(used.conditions)}</td></tr>")
-    return f"<div class='scroll'><table><tr><th>name</th><th>range</th><th>source</th></tr>{''.join(rows)}</table></div>" if rows else ""
+        span = "any wavelength" if used.range_nm is None else f"{used.range_nm[0]:g} to {used.range_nm[1]:g} nm"
+        source = ". ".join(text.rstrip(".") for text in (used.citation, used.conditions) if text)
+        rows.append(f"<tr><td>{escape(name)}</td><td>{span}</td><td class='words'>{escape(source)}</td></tr>")
+    return _table(("name", "range", "source"), "".join(rows)) if rows else ""

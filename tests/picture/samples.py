@@ -1,5 +1,7 @@
 """Made-up results of the three kinds of user, for the figures and the report."""
 
+from dataclasses import replace
+
 import numpy as np
 
 from substrate.quantity import Quantity
@@ -69,18 +71,26 @@ def lifetimes() -> Results:
     for i, z in enumerate(np.linspace(5, 300, 12)):
         total = 1.0 + 400.0 / z**1.5
         quantities = {"emission": {"total": Quantity(total, 0.01 * total, "1", "total decay-rate factor"), "lifetime_ns": Quantity(3.5 / total, None, "ns", "lifetime")}}
-        label, parameters = f"z = {z:g}", {"emitter[1].position_nm[3]": float(z)}
+        label, parameters = f"z = {z:g}", {"emitter[1].position_nm.z": float(z)}
         points.append(PointResult(label, parameters, "finished", quantities=quantities) if i != 4 else PointResult(label, parameters, "failed", "the reason & why"))
     emitter = {"x_nm": 0.0, "z_nm": 90.0, "orientation": "vertical"}
     return _results("Lifetime over a mirror", points, _sketch(emitters=[emitter], thickness=900.0))
 
 
 def wafer() -> Results:
-    """A product of two series: diameter and polarisation."""
+    """A product of two series, diameter and polarisation, with a pattern above; one point has not converged."""
     points = []
+    polar, azimuth = np.linspace(0, 90, 7), np.arange(0, 360, 60.0)
+    arrays = {
+        "pattern": ArrayResult(np.sin(2.0 * np.radians(polar))[:, None] * np.ones(6), "nm^2/sr", "dC/dOmega", (("polar", "deg"), ("azimuth", "deg"))),
+        "pattern_polar_deg": ArrayResult(polar, "deg", "polar", (("polar", "deg"),)),
+        "pattern_azimuth_deg": ArrayResult(azimuth, "deg", "azimuth", (("azimuth", "deg"),)),
+    }
     for polarization in ("s", "p"):
         for d in (60.0, 80.0, 100.0, 150.0):
             signal = 1e-9 * d**6 * (1.0 if polarization == "p" else 0.3)
             quantities = {"cross_sections": {"collected/ring": Quantity(signal, 0.02 * signal, "nm^2", "power into the ring"), "work": Quantity(3 * signal, None, "nm^2", "work")}}
             points.append(PointResult(f"{d:g} nm, {polarization}", {"particle[1].diameter_nm": d, "light.polarization": polarization}, quantities=quantities))
+    points[0] = replace(points[0], arrays=arrays)
+    points[3] = replace(points[3], status="not converged", message="the iteration stopped at 1e-3")
     return _results("Sizing curve", points, _sketch(light={"angle_deg": 70.0, "side": "above", "polarization": "p"}))

@@ -1,15 +1,19 @@
 """Figures: what their axes say, what their data files hold."""
 
 import csv
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
-from substrate.picture.curve import axis_parameter, draw_balance, draw_curve
-from substrate.picture.field_map import draw_field_map
-from substrate.picture.figure import figures, save_figures, save_material_plot, save_sketch
-from substrate.picture.pattern import draw_pattern_cuts
+from substrate.picture.convergence import approaches, draw_convergence, least_certain
+from substrate.picture.curve import axis_parameter, curves, draw_balance, draw_curve
+from substrate.picture.field_map import colour_scale, draw_field_map
+from substrate.picture.figure import incidence_deg, save_material_plot, save_sketch
+from substrate.picture.pattern import draw_pattern_cuts, draw_pattern_discs, pattern_of
 from substrate.picture.sketch import draw_sketch
+from substrate.quantity import Quantity
+from substrate.run.results import ArrayResult
 from tests.picture.samples import hot_spot, lifetimes, wafer
 
 
@@ -18,74 +22,170 @@ def read(path):
         return list(csv.reader(file))
 
 
-@pytest.mark.parametrize("make", [hot_spot, lifetimes, wafer])
-def test_every_figure_is_written_with_its_data(make, tmp_path):
-    written = save_figures(make(), tmp_path)
-    pictures = [path for path in written if path.suffix == ".png"]
-    assert len(pictures) >= 2 and all(path.stat().st_size > 5000 for path in pictures)
-    assert all(path.read_bytes()[:4] == b"\x89PNG" for path in pictures)
-    assert {path.stem for path in written if path.suffix == ".csv"} <= {path.stem for path in pictures}
+def legend(figure):
+    return [text.get_text() for text in figure.legends[0].get_texts()]
 
 
-def test_names_of_the_figures_of_one_point():
-    names = [stem for stem, *_ in figures(hot_spot())]
-    assert names == ["sample", "power_cross_sections", "field_map", "pattern_cuts", "pattern_discs", "convergence"]
+STEMS = {
+    "hot spot": {"sample", "power_cross_sections", "field_map", "pattern_cuts", "pattern_discs", "convergence"},
+    "lifetimes": {"sample", "emission", "emission_ns"},
+    "wafer": {"sample", "cross_sections_collected_ring", "cross_sections_work", "pattern_cuts_point_1", "pattern_discs_point_1"},
+}
 
 
-def test_field_map_says_plane_unit_and_scale(tmp_path):
+@pytest.mark.parametrize("name", STEMS)
+def test_every_figure_is_written_with_its_data(name, folders):
+    pictures = list(folders[name].glob("*.png"))
+    assert {path.stem for path in pictures} == {path.stem for path in folders[name].glob("*.csv")} == STEMS[name]
+    assert all(path.read_bytes()[:4] == b"\x89PNG" and path.stat().st_size > 5000 for path in pictures)
+    assert all(len(read(path)) > 1 for path in folders[name].glob("*.csv"))
+
+
+def test_field_map_says_plane_unit_and_scale(folders):
     figure = draw_field_map(hot_spot().points[0])
     axes, bar = figure.axes
     assert (axes.get_xlabel(), axes.get_ylabel()) == ("x (nm)", "z (nm)")
-    assert "|E incident|²" in bar.get_ylabel() and "logarithmic" in bar.get_ylabel()
+    assert bar.get_ylabel() == "|E|² / |E incident|², logarithmic"
     assert "xz at y = 0 nm" in axes.get_title()
-    save_figures(hot_spot(), tmp_path)
-    rows = read(tmp_path / "field_map.csv")
+    rows = read(folders["hot spot"] / "field_map.csv")
     assert rows[0] == ["x (nm)", "z (nm)", "|E|^2 / |E incident|^2"] and len(rows) == 1 + 31 * 25
     values = np.asarray(hot_spot().points[0].arrays["field_map_e2"].values)
     assert float(rows[1][2]) == values[0, 0] and float(rows[-1][2]) == values[-1, -1]
 
 
-def test_curve_has_bars_labels_and_a_legend_outside(tmp_path):
+def test_colour_scale_is_logarithmic_from_thirty_times_the_median():
+    flat = np.ones((5, 5))
+    flat[0, 0] = 29.0
+    assert colour_scale(flat)[1:] == ("neither", "")
+    flat[0, 0] = 31.0
+    assert colour_scale(flat)[2] == ", logarithmic"
+    flat[0, 0], flat[1, 1] = 1e6, 0.0
+    norm, extend, _ = colour_scale(flat)
+    assert norm.vmin == pytest.approx(100.0) and extend == "min"  # four decades at most, and the bar says that there is more
+
+
+def test_curve_has_bars_labels_and_a_legend_outside(folders):
     results = lifetimes()
     figure = draw_curve(results, "emission", "1", ["total"])
     (axes,) = figure.axes
-    assert axes.get_xlabel() == "emitter[1]: position (nm)[3]" or "position" in axes.get_xlabel()
-    assert axes.get_ylabel() == "total"
-    assert axes.get_legend() is None and len(figure.legends) == 1
-    line = axes.containers[0].lines[0]
-    assert len(line.get_xdata()) == 11  # the failed point is left out
-    save_figures(results, tmp_path)
-    rows = read(tmp_path / "emission.csv")
-    assert rows[0][:3] == ["emitter[1].position_nm[3]", "total", "total error"] and rows[5][1] == ""
+    assert axes.get_xlabel() == "emitter 1: position z (nm)" and axes.get_ylabel() == "total"
+    assert axes.get_legend() is None and legend(figure) == ["failed", "total"]
+    line, _, (bars,) = axes.containers[0].lines
+    assert len(line.get_xdata()) == 11  # the failed point has no value, and is marked at the foot
+    first = bars.get_segments()[0]
+    assert first[1][1] - first[0][1] == pytest.approx(2.0 * results.points[0].quantities["emission"]["total"].error)
+    rows = read(folders["lifetimes"] / "emission.csv")
+    assert rows[0] == ["emitter[1].position_nm.z", "status", "total", "total error"]
+    assert rows[5][1:] == ["failed", "", ""]
+    assert float(rows[1][2]) == results.points[0].quantities["emission"]["total"].value
 
 
-def test_two_parameters_give_a_family():
+def test_curves_without_bars_have_none():
+    (curve,) = curves(lifetimes(), "emission", ["lifetime_ns"])
+    assert curve.bars is None and draw_curve(lifetimes(), "emission", "ns", ["lifetime_ns"]).axes[0].get_ylabel() == "lifetime (ns)"
+
+
+def test_two_parameters_give_a_family_on_a_logarithmic_axis():
     results = wafer()
     assert axis_parameter(results) == ("particle[1].diameter_nm", ("light.polarization",))
     figure = draw_curve(results, "cross_sections", "nm^2", ["collected/ring"])
-    assert [text.get_text() for text in figure.legends[0].get_texts()] == ["collected/ring (polarization s)", "collected/ring (polarization p)"]
-    assert figure.axes[0].get_yscale() == "log"
+    assert legend(figure) == ["not converged", "polarization s", "polarization p"]
+    axes = figure.axes[0]
+    assert (axes.get_xlabel(), axes.get_ylabel()) == ("particle 1: diameter (nm)", "collected: ring (nm²)")
+    assert axes.get_yscale() == "log" and axes.get_xscale() == "linear"
 
 
-def test_balance_shows_shares_of_the_work():
-    figure = draw_balance(hot_spot().points[0], "cross_sections")
-    (axes,) = figure.axes
+def test_more_curves_than_colours_stay_distinct():
+    base = lifetimes()
+    points = [
+        replace(point, parameters={**point.parameters, "light.wavelength_nm": 500.0 + i})
+        for i in range(11)
+        for point in base.points
+        if point.status == "finished"
+    ]
+    figure = draw_curve(replace(base, points=tuple(points)), "emission", "1", ["total"])
+    looks = {(tuple(c.lines[0].get_color()), c.lines[0].get_marker(), c.lines[0].get_linestyle()) for c in figure.axes[0].containers}
+    assert len(looks) == 11
+
+
+def test_balance_shows_shares_of_the_work(folders):
+    (axes,) = draw_balance(hot_spot().points[0], "cross_sections").axes
     assert axes.get_xlabel() == "share of the work (%)"
     assert [round(bar.get_width(), 6) for bar in axes.patches] == [60.0, 30.0, 0.0, 10.0]
+    assert "closure" in axes.get_title() and "100.0 ± 1.5 nm²" in axes.get_title()
+    assert any("no error bar" in text.get_text() for text in axes.texts)
+    assert read(folders["hot spot"] / "power_cross_sections.csv")[4] == ["stack", "10.0", "", "nm^2"]
 
 
 def test_pattern_cut_follows_the_plane_of_incidence():
-    figure = draw_pattern_cuts(hot_spot().points[0])
+    point = hot_spot().points[0]
+    figure = draw_pattern_cuts(point, incidence_deg=0.0)
     angle, values = figure.axes[0].lines[0].get_data()
     forward = values[np.argmin(np.abs(angle - np.radians(20.0)))]
     backward = values[np.argmin(np.abs(angle + np.radians(20.0)))]
     assert forward == pytest.approx(3.0 * np.cos(np.radians(20.0)) ** 2) and backward == pytest.approx(forward / 3.0)
+    assert "plane of incidence (azimuth 0 / 180 deg)" in legend(figure)[0]
+    turned = draw_pattern_cuts(point, incidence_deg=180.0).axes[0].lines[0].get_ydata()
+    assert turned == pytest.approx(values[::-1])
+
+
+def test_pattern_between_azimuths_is_interpolated_across_zero():
+    pattern = pattern_of(hot_spot().points[0])
+    assert pattern.at(345.0) == pytest.approx(0.5 * (pattern.at(330.0) + pattern.at(0.0)))
+
+
+def test_azimuth_of_the_light_comes_from_the_series_or_the_case():
+    results = replace(hot_spot(), resolved={"light": {"azimuth_deg": 30.0}})
+    assert incidence_deg(results, results.points[0]) == 30.0
+    assert incidence_deg(results, replace(results.points[0], parameters={"light.azimuth_deg": 75.0})) == 75.0
+    assert incidence_deg(hot_spot(), hot_spot().points[0]) == 0.0
+
+
+def test_discs_show_the_sides_that_there_are():
+    titles = [axes.get_title() for axes in draw_pattern_discs(hot_spot().points[0]).axes]
+    assert titles[:2] == ["above", ""] and "below" in titles
+    axes, bar = draw_pattern_discs(wafer().points[0]).axes
+    assert (axes.get_title(), axes.get_xlabel(), bar.get_ylabel()) == ("above", "sin(polar) cos(azimuth)", "pattern (nm²/sr)")
+
+
+def test_convergence_ends_at_the_answer_with_its_bar(folders):
+    (axes,) = draw_convergence(hot_spot().points[0]).axes
+    assert axes.get_xlabel().startswith("cell size (nm)")
+    (bars,) = axes.containers[0].lines[2]
+    ((low, high),) = bars.get_segments()
+    assert (low[1], high[1]) == pytest.approx((-1.5, 1.5))  # 1.5 nm^2 of 100 nm^2, in per cent
+    rows = read(folders["hot spot"] / "convergence.csv")
+    assert rows[-1] == ["work", "nm^2", "0.0", "100.0", "1.5"]
+
+
+def test_convergence_shows_the_answer_even_where_it_is_not_the_fit():
+    point = hot_spot().points[0]
+    finest = Quantity(102.0, 3.5, "nm^2", "work")
+    point = replace(point, quantities={"cross_sections": {"work": finest}})
+    (found,) = approaches(point)
+    assert found.answer == finest and found.fit[0] == 100.0
+
+
+def test_parts_are_measured_against_their_whole():
+    point = hot_spot().points[0]
+    arrays = {f"convergence/up/{part}": point.arrays[f"convergence/work/{part}"] for part in ("cell_nm", "fit")}
+    arrays["convergence/up/values"] = ArrayResult(np.full(9, 30.5), "nm^2", "up")
+    found = {approach.name: approach for approach in approaches(replace(point, arrays={**point.arrays, **arrays}))}
+    assert (found["up"].scale, found["up"].scale_name) == (100.0, "work") and found["up"].answer.value == 30.0
+
+
+def test_least_certain_point_of_a_series():
+    sure, unsure = hot_spot().points[0], hot_spot().points[0]
+    unsure = replace(unsure, label="unsure", quantities={"cross_sections": {"work": Quantity(100.0, 9.0, "nm^2", "work")}})
+    assert least_certain(replace(hot_spot(), points=(sure, unsure, sure))).label == "unsure"
+    assert least_certain(lifetimes()) is None
 
 
 def test_sketch_names_everything_and_says_what_is_cut():
     texts = " | ".join(text.get_text() for text in draw_sketch(lifetimes().sketch).axes[0].texts)
-    for words in ("water, n = 1.33", "sphere 1, gold", "emitter, vertical", "gold, 900 nm", "cut, not to scale", "silica, 1.5 nm", "objective"):
+    for words in ("water", "n = 1.33", "sphere 1, gold", "emitter, vertical", "gold, 900 nm", "cut", "silica, 1.5 nm", "objective", "silicon", " nm"):
         assert words in texts
+    assert "light, 65 deg, p" in " | ".join(text.get_text() for text in draw_sketch(hot_spot().sketch).axes[0].texts)
 
 
 def test_sketch_and_material_plot_files(tmp_path):

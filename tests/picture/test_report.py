@@ -1,44 +1,89 @@
 """The report page: every number with its bar, unit and definition; nothing from outside; nothing of the user's unescaped."""
 
 import re
+from dataclasses import replace
 
 import pytest
 
-from substrate.picture.report import cautions, report_html, write_report
+from substrate.picture import report
+from substrate.picture.cautions import cautions
+from substrate.picture.report import report_html
+from tests.picture.conftest import MAKERS
 from tests.picture.samples import hot_spot, lifetimes, wafer
 
 
-@pytest.mark.parametrize("make", [hot_spot, lifetimes, wafer])
-def test_page_stands_alone(make, tmp_path):
-    path = write_report(make(), tmp_path / "report.html")
-    page = path.read_text(encoding="utf-8")
-    assert "http" not in page.replace("http-equiv", "") and "<script" not in page and "<link" not in page
+@pytest.fixture
+def no_figures(monkeypatch):
+    """Pages without pictures, for tests of words only."""
+    monkeypatch.setattr(report, "pictures", lambda results: iter(()))
+
+
+@pytest.mark.parametrize("name", MAKERS)
+def test_page_stands_alone(name, pages):
+    page = pages[name]
+    assert "http" not in page and "<script" not in page and "<link" not in page and "url(" not in page
     assert page.count("<img") == page.count("data:image/png;base64,") >= 2
+    assert "name='viewport'" in page and "@media print" in page
 
 
-def test_every_number_has_bar_unit_and_definition():
-    page = report_html(hot_spot())
-    for named in hot_spot().points[0].quantities.values():
-        for quantity in named.values():
-            assert str(quantity).replace("nm^2", "nm²") in page
-            assert quantity.definition in page
-    assert "no error bar" in page  # the stack's share has none
-    assert "812 ± 31" in page and "60.0 ± 1.0 nm²" in page
+@pytest.mark.parametrize("name", MAKERS)
+def test_every_number_has_bar_unit_and_definition(name, pages):
+    for point in MAKERS[name]().points:
+        for named in point.quantities.values():
+            for quantity in named.values():
+                assert str(quantity).replace("nm^2", "nm²") in pages[name]
+                assert quantity.definition in pages[name]
 
 
-def test_user_text_is_escaped():
-    page = report_html(hot_spot())
+def test_numbers_as_they_are_printed(pages):
+    page = pages["hot spot"]
+    assert "<td class='value'>812 ± 31</td>" in page and "60.0 ± 1.0 nm²" in page
+    assert "10 nm² (no error bar)" in page  # the stack's share has none
+    assert "Cross sections, balance: closure (0.1 ± 1.0)e-5" in page
+
+
+def test_user_text_is_escaped(pages):
+    page = pages["hot spot"]
     assert "Gap &amp; &lt;spot&gt;" in page and "&lt;script&gt;" in page and "spot 1 is &lt;near&gt;" in page
     assert not re.search(r"<(spot|near|script)>", page)
 
 
-def test_failed_points_are_shown_with_their_reason():
-    page = report_html(lifetimes())
-    assert "failed" in page and "the reason &amp; why" in page
+def test_the_case_is_there_verbatim(pages):
+    assert "<pre>title = &#x27;made up&#x27;\n[stack]\nhost = &#x27;&lt;script&gt;&#x27;\n</pre>" in pages["hot spot"]
+
+
+def test_failed_points_are_shown_with_their_reason(pages):
+    page = pages["lifetimes"]
+    assert "<td class='value'>failed</td>" in page and "failed. the reason &amp; why" in page and "1 of 12 points failed" in page
+    assert "<td>diameter 150 nm, polarization s (not converged)</td>" in pages["wafer"]
+    assert "not converged. the iteration stopped at 1e-3" in pages["wafer"]
+
+
+def test_unfinished_runs_say_so(no_figures):
+    results = wafer()
+    assert "Unfinished: 8 of 20 points" in report_html(replace(results, planned_points=20))
+    assert "Unfinished" not in report_html(results)
+    assert "No point is finished" in report_html(replace(results, points=(), planned_points=8))
+
+
+def test_warnings_come_once_with_their_number(no_figures):
+    results = wafer()
+    points = [replace(point, warnings=("doubtful",)) if i < 3 else point for i, point in enumerate(results.points)]
+    page = report_html(replace(results, points=tuple(points)))
+    assert page.count("doubtful") == 1 and "doubtful (3 of 8 points)" in page
+
+
+def test_materials_have_source_and_range(pages):
+    assert "<td>silicon</td><td>400 to 800 nm</td><td class='words'>A. Author, J. Made-up 1, 1 (1900). crystal</td>" in pages["wafer"]
 
 
 def test_cautions_concern_the_case():
-    assert any("IEC 60825-1" in text for text in cautions(hot_spot()))
-    assert any("SEMI M53" in text for text in cautions(wafer()))
-    assert not any("IEC 60825-1" in text for text in cautions(lifetimes()))
-    assert not any("SEMI M53" in text for text in cautions(lifetimes()))
+    def called(results, words):
+        return any(words in text for text in cautions(results))
+
+    assert called(hot_spot(), "IEC 60825-1") and not called(lifetimes(), "IEC 60825-1")
+    assert called(wafer(), "SEMI M53") and not called(lifetimes(), "SEMI M53")
+    assert called(wafer(), "NIOSH 2012-147") and not called(replace(wafer(), sketch=replace(wafer().sketch, outlines=[])), "NIOSH")
+    assert called(hot_spot(), "largest value of a map") and not called(wafer(), "largest value of a map")
+    assert called(lifetimes(), "Lifetimes and yields") and not called(wafer(), "Lifetimes and yields")
+    assert all(called(make(), "local bulk optical constants") for make in MAKERS.values())
