@@ -120,3 +120,18 @@ def test_missed_poles_are_noticed():
     layers = Layers(633.0, (1.4, np.sqrt(-2 + 0.001j)))
     pole = np.sqrt(1.96 * (-2 + 0.001j) / (1.96 - 2 + 0.001j))
     assert tail_start(layers) > pole.real * layers.k0
+
+
+@pytest.mark.parametrize("name,rho,height", [("glass", 60.0, 30.0), ("near resonance", 20.0, 8.0), ("waveguide", 150.0, 90.0), ("silver film", 0.0, 5.0)])
+def test_quadrature_and_table_against_multiple_precision(name, rho, height):
+    """A second implementation: transfer matrices and its own path in mpmath, scalars of G, so that k^2 has to be added."""
+    from tests.reference.multilayer import LayerStack
+    from tests.reference.reflected_tensor import reflected_scalars as reference
+
+    layers = STACKS[name]
+    exact = reference(LayerStack(layers.index, layers.thickness_nm, layers.wavelength_nm), rho, height)
+    exact = layers.k_host**2 * np.array([complex(value) for value in exact])
+    found, _ = reflected_scalars(layers, rho, height, 1e-9)
+    assert np.abs(found - exact).max() < 1e-9 * np.abs(exact).max()  # the goal of the quadrature
+    table = build_table(layers, 200.0, 4.0, 120.0)
+    assert np.abs(table.scalars(rho, height)[:, 0, 0] - exact).max() < 1e-7 * np.abs(exact).max()  # the table's, with room near resonance

@@ -30,6 +30,14 @@ class LayerStack:
     def k0(self):
         return 2 * mp.pi / mp.mpmathify(self.wavelength_nm)
 
+    @property
+    def host(self):
+        """Index of the host, which must be real."""
+        index = mp.mpmathify(self.index[0])
+        if mp.im(index) != 0:
+            raise ValueError(f"host index {self.index[0]}: a lossy host has no incident power and no cross sections")
+        return mp.re(index)
+
     def eps(self, layer: int):
         return mp.mpmathify(self.index[layer]) ** 2
 
@@ -97,7 +105,7 @@ def plane_wave(stack: LayerStack, angle_deg: float, polarization: str) -> Respon
         r, t = up / down, 1 / down
         through = abs(t) ** 2 * mp.re(normal[-1] / weight[-1]) / mp.re(normal[0] / weight[0])
         if polarization == "p":
-            t *= mp.mpmathify(stack.index[0]) / mp.mpmathify(stack.index[-1])
+            t *= stack.host / mp.mpmathify(stack.index[-1])
         absorbed = tuple(float(_loss(stack, film, angle_deg, polarization)) for film in range(1, len(stack.index) - 1))
         return Response(complex(r), complex(t), float(abs(r) ** 2), float(through), absorbed)
 
@@ -115,7 +123,7 @@ def _field(stack: LayerStack, angle_deg, polarization: str, z) -> tuple:
     for thickness in stack.thickness_nm:
         bottoms.append(bottoms[-1] - mp.mpmathify(thickness))
     layer = next((j for j, bottom in enumerate(bottoms) if z >= bottom), len(bottoms))
-    scale = (1 if polarization == "s" else -mp.mpmathify(stack.index[0])) / _incident(pairs, normal, weight)[0]
+    scale = (1 if polarization == "s" else -stack.host) / _incident(pairs, normal, weight)[0]
     if layer == len(bottoms):  # the base holds one wave only
         u = mp.expj(-normal[-1] * stack.k0 * (z - bottoms[-1]))
         d = -normal[-1] / weight[-1] * u
@@ -139,15 +147,14 @@ def _loss(stack: LayerStack, film: int, angle_deg, polarization: str):
 
     # pieces of half a radian of the phase at most, Gauss-Legendre in each
     pieces = int(abs(mp.mpmathify(stack.index[film])) * stack.k0 * thickness) + 1
-    host = mp.mpmathify(stack.index[0])
     nodes = [thickness * j / pieces for j in range(pieces + 1)]
     with mp.workdps(18):
         integral = mp.quad(density, nodes, method="gauss-legendre", maxdegree=5)
-    return stack.k0 * imaginary / (host * mp.cos(mp.mpf(angle_deg) * mp.pi / 180)) * integral
+    return stack.k0 * imaginary / (stack.host * mp.cos(mp.mpf(angle_deg) * mp.pi / 180)) * integral
 
 
 def _in_plane(stack: LayerStack, angle_deg):
-    return mp.mpmathify(stack.index[0]) * mp.sin(mp.mpf(angle_deg) * mp.pi / 180)
+    return stack.host * mp.sin(mp.mpf(angle_deg) * mp.pi / 180)
 
 
 def ellipsometric_angles(stack: LayerStack, angle_deg: float) -> tuple[float, float]:

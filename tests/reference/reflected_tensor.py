@@ -43,7 +43,7 @@ def reflected_scalars(stack: LayerStack, rho_nm, height_sum_nm, end: float | Non
         rho, height = mp.mpf(rho_nm), mp.mpf(height_sum_nm)
         if height <= 0:
             raise ValueError(f"height_sum_nm = {height_sum_nm}: the integrals exist for z + z' > 0 only")
-        k = stack.k0 * mp.mpmathify(stack.index[0])
+        k = stack.k0 * stack.host
         right = stack.k0 * (right_of_poles(stack) if end is None else mp.mpf(end))
         near_axis = _finite_panels(k, right, rho, height, mp.mpf(depth))
         # films repeat their poles upwards and downwards: 4/rho further on, panels of 4/rho keep off that column
@@ -102,7 +102,7 @@ def _graded(start, turn, longest, length) -> list:
 
 def _panel(stack: LayerStack, low, high, rho, height, cylinder) -> mp.matrix:
     """The four integrals without their prefactors over one straight panel."""
-    k0, k = stack.k0, stack.k0 * mp.mpmathify(stack.index[0])
+    k0, k = stack.k0, stack.k0 * stack.host
     middle, half = (low + high) / 2, (high - low) / 2
     total = mp.matrix(4, 1)
     for node, weight in _gauss_legendre(mp.mp.prec):
