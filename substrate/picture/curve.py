@@ -8,9 +8,10 @@ from dataclasses import dataclass
 import matplotlib
 import numpy as np
 from matplotlib.figure import Figure
+from matplotlib.ticker import LogLocator, NullFormatter
 
 from substrate.picture.style import COLOURS, FAINT, INK, LINES, MAP, MARKERS, new_figure, plain_axes
-from substrate.picture.words import finite_error, label, number_of, parameter_value, parameter_words, quantity_text, quantity_words
+from substrate.picture.words import finite_error, label, number_of, parameter_value, parameter_words, quantity_text, quantity_words, value_text
 from substrate.quantity import Quantity
 from substrate.run.results import FAILED, NOT_CONVERGED, PointResult, Results
 
@@ -20,10 +21,13 @@ BALANCES = {
     "emission": (("up", "down", "guided", "particle", "stack"), "total"),
 }
 _ASIDE = ("balance",)
+_SHARES = ("reflectance",)
+_ALONE = ("quantum_yield", "lifetime_ratio")  # pure numbers that share no axis with rates
 _LOGARITHMIC_FROM = 100.0  # largest over smallest value
+_NEGLIGIBLE = 0.01  # of the largest value: curves that stay below it do not choose the scale
 _MOST_CURVES = 24
 _MANY = 30  # points of a curve whose markers become small
-_AXIS_WORDS = {"emission": "factor", "near_field": "|E|² / |E incident|²", "reflectance": "share of the incident power"}
+_AXIS_WORDS = {"emission": "power / host power of the emitter", "near_field": "|E|² / |E incident|²", "reflectance": "share of the incident power"}
 
 
 @dataclass(frozen=True)
@@ -37,40 +41,56 @@ class Curve:
 
 
 def axis_parameter(results: Results) -> tuple[str | None, tuple[str, ...]]:
-    """The series parameter with the most distinct numbers, for the abscissa, and the others."""
+    """The series parameter for the abscissa, and the others: the one with the most distinct numbers, or else the most distinct words."""
     names = list(dict.fromkeys(name for point in results.points for name in point.parameters))
-    numeric = {
-        name: len({point.parameters.get(name) for point in results.points})
-        for name in names
-        if all(number_of(point.parameters.get(name)) is not None for point in results.points)
-    }
-    if not numeric or max(numeric.values()) < 2:
-        return None, tuple(names)
-    along = max(numeric, key=lambda name: numeric[name])
-    return along, tuple(name for name in names if name != along)
+    values = {name: [point.parameters.get(name) for point in results.points] for name in names}
+    numeric = [name for name in names if all(number_of(value) is not None for value in values[name])]
+    for candidates in (numeric, names):
+        distinct = {name: len(set(map(str, values[name]))) for name in candidates}
+        if distinct and max(distinct.values()) > 1:
+            along = max(distinct, key=lambda name: distinct[name])
+            return along, tuple(name for name in names if name != along)
+    return None, tuple(names)
 
 
-def quantities_by_unit(results: Results, ask: str) -> dict[str, list[str]]:
-    """Names of the quantities of an ask by unit, closures of balances left out."""
-    units: dict[str, str] = {}
+def abscissa(results: Results, along: str) -> tuple[list[float], list[str]]:
+    """Place of each point along the series parameter, and the words at the places 0, 1, 2 ... if it is one of words."""
+    values = [point.parameters.get(along) for point in results.points]
+    numbers = [number_of(value) for value in values]
+    if None not in numbers:
+        return numbers, []
+    words = list(dict.fromkeys(value_text(value) for value in values))
+    return [float(words.index(value_text(value))) for value in values], words
+
+
+def quantity_groups(results: Results, ask: str) -> dict[tuple[str, str], list[str]]:
+    """Names of the quantities of an ask that share a figure, by unit and, for those that share no axis with others, name.
+
+    Closures of balances are left out.
+    """
+    groups: dict[tuple[str, str], list[str]] = {}
     for point in results.points:
         for name, quantity in point.quantities.get(ask, {}).items():
-            if name.rpartition("/")[2] not in _ASIDE:
-                units.setdefault(name, quantity.unit)
-    return {unit: [name for name in units if units[name] == unit] for unit in dict.fromkeys(units.values())}
+            last = name.rpartition("/")[2]
+            if last in _ASIDE:
+                continue
+            group = groups.setdefault((quantity.unit, last if last in _ALONE else ""), [])
+            if name not in group:
+                group.append(name)
+    return groups
 
 
 def curves(results: Results, ask: str, names: list[str]) -> list[Curve]:
     """One curve a quantity and combination of the further parameters; those that are zero everywhere are left out."""
     along, others = axis_parameter(results)
-    groups: dict[str, list[PointResult]] = {}
-    for point in results.points:
+    groups: dict[str, list[tuple[float, PointResult]]] = {}
+    for place, point in zip(abscissa(results, along)[0], results.points):
         words = ", ".join(parameter_value(name, point.parameters[name]) for name in others if name in point.parameters)
-        groups.setdefault(words, []).append(point)
+        groups.setdefault(words, []).append((place, point))
     found = []
     for name in names:
         for words, points in groups.items():
-            known = [(number_of(p.parameters[along]), p.quantities[ask][name]) for p in points if name in p.quantities.get(ask, {})]
+            known = [(place, p.quantities[ask][name]) for place, p in points if name in p.quantities.get(ask, {})]
             known.sort(key=lambda pair: pair[0])
             title = quantity_words(name) if len(names) > 1 or not words else ""
             if any(quantity.value for _, quantity in known):
@@ -113,14 +133,21 @@ def draw_curve(results: Results, ask: str, unit: str, names: list[str]) -> Figur
     axes = figure.add_subplot()
     plain_axes(axes)
     drawn = found[::step] if found else []
+    largest = max((np.abs(curve.y).max() for curve in drawn), default=0.0)
+    words = abscissa(results, along)[1]
     for curve, style in zip(drawn, _styles(len(drawn))):
         size = 2.0 if len(curve.x) > _MANY else 4.0
-        axes.errorbar(curve.x, curve.y, yerr=curve.bars, label=curve.title, capsize=2, markersize=size, linewidth=1.4, **style)
-    _scales(axes, drawn)
+        most = np.abs(curve.y).max()
+        title = curve.title + (f" (at most {most:.2g})" if most < _NEGLIGIBLE * largest else "")
+        line = {"linestyle": "none"} if words else {}
+        axes.errorbar(curve.x, curve.y, yerr=curve.bars, label=title, capsize=2, markersize=size, linewidth=1.4, **{**style, **line})
+    _scales(axes, [curve for curve in drawn if np.abs(curve.y).max() >= _NEGLIGIBLE * largest], ask in _SHARES)
+    if words:
+        axes.set_xticks(range(len(words)), words)
+        axes.set_xlim(-0.5, len(words) - 0.5)
     _mark_points(axes, results, along)
     axes.set_xlabel(label(*parameter_words(along)))
-    several = {"nm^2": "cross section", "ns": "lifetime"}.get(unit, _AXIS_WORDS.get(ask, "value"))
-    axes.set_ylabel(label(quantity_words(names[0]) if len(names) == 1 else several, unit))
+    axes.set_ylabel(label(_ordinate(ask, unit, names), unit))
     if axes.get_legend_handles_labels()[0]:
         title = f"each {step}th curve of {len(found)}" if step > 1 else None
         figure.legend(loc="outside right upper", fontsize=8, frameon=False, title=title, title_fontsize=8)
@@ -135,18 +162,33 @@ def _styles(count: int) -> list[dict]:
     return [{"color": colours[i], "marker": MARKERS[i % len(MARKERS)], "linestyle": LINES[i % len(LINES)]} for i in range(count)]
 
 
-def _scales(axes, drawn: list[Curve]) -> None:
-    """Logarithmic axes where all values are positive and span more than a factor of 100."""
-    for values, setter in (("x", axes.set_xscale), ("y", axes.set_yscale)):
-        numbers = np.concatenate([getattr(curve, values) for curve in drawn]) if drawn else np.zeros(1)
-        if numbers.min() > 0.0 and numbers.max() > _LOGARITHMIC_FROM * numbers.min():
-            setter("log")
+def _ordinate(ask: str, unit: str, names: list[str]) -> str:
+    """What the quantities of one figure have in common."""
+    last = {name.rpartition("/")[2] for name in names}
+    if ask == "near_field":
+        return _AXIS_WORDS[ask] + (f", {quantity_words(names[0])}" if len(names) == 1 else "")
+    if len(names) == 1 or len(last) == 1:
+        return quantity_words(names[0] if len(names) == 1 else last.pop())
+    return {"nm^2": "cross section", "ns": "lifetime"}.get(unit, _AXIS_WORDS.get(ask, "value"))
+
+
+def _scales(axes, counting: list[Curve], are_shares: bool) -> None:
+    """Logarithmic axes where all values are positive and span more than a factor of 100, but for shares of a whole."""
+    if not counting:
+        return
+    x, y = (np.concatenate([getattr(curve, values) for curve in counting]) for values in ("x", "y"))
+    if x.min() > 0.0 and x.max() > _LOGARITHMIC_FROM * x.min():
+        axes.set_xscale("log")
+    if y.min() > 0.0 and y.max() > _LOGARITHMIC_FROM * y.min() and not are_shares:
+        axes.set_yscale("log")
+        axes.set_ylim(bottom=0.5 * y.min())
 
 
 def _mark_points(axes, results: Results, along: str) -> None:
     """A mark at the foot for each point that failed or did not converge."""
+    x, _ = abscissa(results, along)
     for status, marker, colour in ((FAILED, "x", COLOURS[1]), (NOT_CONVERGED, "^", COLOURS[4])):
-        places = sorted({number_of(point.parameters[along]) for point in results.points if point.status == status})
+        places = sorted({place for place, point in zip(x, results.points) if point.status == status})
         if places:
             style = {"linestyle": "none", "marker": marker, "color": colour, "markersize": 7, "clip_on": False}
             axes.plot(places, [0.0] * len(places), transform=axes.get_xaxis_transform(), label=status, **style)
@@ -199,11 +241,14 @@ def draw_material(name: str, table, citation: str) -> Figure:
     axes = figure.add_subplot()
     plain_axes(axes)
     dots = {"marker": "o", "markersize": 3} if len(nm) <= 2 * _MANY else {}
-    axes.plot(nm, n, color=COLOURS[0], label="n", **dots)
+    axes.plot(nm, n, color=COLOURS[0], label="n" if k.any() else "n (k = 0)", **dots)
     if k.any():
         axes.plot(nm, k, color=COLOURS[1], linestyle="--", label="k", **dots)
     if nm.max() > 10.0 * nm.min():
         axes.set_xscale("log")
+        axes.xaxis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0)))
+        axes.xaxis.set_major_formatter("{x:g}")
+        axes.xaxis.set_minor_formatter(NullFormatter())
     axes.set_xlabel("vacuum wavelength (nm)")
     axes.set_ylabel("refractive index n + ik")
     figure.legend(loc="outside right upper", frameon=False)

@@ -2,19 +2,26 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from matplotlib.colors import LogNorm, Normalize
 from matplotlib.figure import Figure
+from matplotlib.patheffects import withStroke
 
 from substrate.picture.style import FAINT, MAP, new_figure
 from substrate.run.results import PointResult
 
 _LOGARITHMIC_FROM = 30.0  # largest value over the median
 _DECADES = 4.0  # a logarithmic scale shows at most
+_EDGED = withStroke(linewidth=2.4, foreground="#00000099")  # dark edges keep white lines visible on bright fields
 
 
-def draw_field_map(point: PointResult, prefix: str = "") -> Figure:
-    """|E|^2 over that of the incident wave; a logarithmic scale where the largest value is more than 30 times the median."""
+def draw_field_map(point: PointResult, prefix: str = "", interfaces_nm: Sequence[float] = (0.0,), spots: Sequence = ()) -> Figure:
+    """|E|^2 over that of the incident wave; a logarithmic scale where the largest value is more than 30 times the median.
+
+    interfaces_nm: heights z to be drawn on upright planes.  spots: (number, u, v) of the points asked for on this plane, in nm.
+    """
     found = point.arrays[f"{prefix}field_map_e2"]
     u, v = (np.asarray(point.arrays[f"{prefix}field_map_{name}_nm"].values, dtype=float) for name in "uv")
     values = np.asarray(found.values, dtype=float)
@@ -25,12 +32,20 @@ def draw_field_map(point: PointResult, prefix: str = "") -> Figure:
     figure.colorbar(mesh, ax=axes, extend=extend).set_label(f"|E|² / |E incident|²{scale}")
     inside = point.arrays.get(f"{prefix}field_map_inside")
     if inside is not None and np.ptp(np.asarray(inside.values)) > 0:
-        axes.contour(u, v, np.asarray(inside.values, dtype=float).T, levels=[0.5], colors="white", linewidths=1.2)
+        lines = axes.contour(u, v, np.asarray(inside.values, dtype=float).T, levels=[0.5], colors="white", linewidths=1.2)
+        lines.set_path_effects([_EDGED])
     names = [axis[0] for axis in found.axes]
-    if names[1] == "z" and axes.get_ylim()[0] < 0.0 < axes.get_ylim()[1]:
-        axes.axhline(0.0, color="white", linewidth=1.0, linestyle="--")
+    low, high = axes.get_ylim()
+    for z in interfaces_nm if names[1] == "z" else ():
+        if low < z < high:
+            axes.axhline(z, color="white", linewidth=1.0, linestyle="--", path_effects=[_EDGED])
+    if names[1] == "z" and low < 0.0 < high:
         place = {"xycoords": ("axes fraction", "data"), "textcoords": "offset points", "ha": "right"}
-        axes.annotate("surface", (1.0, 0.0), (-3, 2), fontsize=7, color="white", **place)
+        axes.annotate("surface", (1.0, 0.0), (-3, 2), fontsize=7, color="white", path_effects=[_EDGED], **place)
+    for number, at_u, at_v in spots:
+        if axes.get_xlim()[0] < at_u < axes.get_xlim()[1] and low < at_v < high:
+            axes.plot(at_u, at_v, marker="+", markersize=8, color="white", markeredgewidth=1.3, linestyle="none", path_effects=[_EDGED])
+            axes.annotate(f"spot {number}", (at_u, at_v), (5, 4), textcoords="offset points", fontsize=8, color="white", path_effects=[_EDGED])
     axes.set_aspect("equal")
     axes.set_xlabel(f"{names[0]} (nm)")
     axes.set_ylabel(f"{names[1]} (nm)")

@@ -19,7 +19,7 @@ from substrate.picture.curve import (
     draw_balance,
     draw_curve,
     draw_material,
-    quantities_by_unit,
+    quantity_groups,
     zero_everywhere,
 )
 from substrate.picture.field_map import draw_field_map, map_rows
@@ -30,6 +30,7 @@ from substrate.picture.words import ask_words, number_of, point_words, quantity_
 from substrate.run.results import FAILED, PointResult, Results, Sketch
 
 MOST_POINTS = 6  # maps and patterns of at most so many points of a series, spread evenly over it
+_ON_PLANE_NM = 0.5  # spots this close to the plane of a map are marked on it
 SAMPLE, ANSWERS, BALANCE, FIELDS, CONVERGENCE = "sample", "answers", "balance", "fields", "convergence"
 
 
@@ -67,16 +68,17 @@ def pictures(results: Results) -> Iterator[Picture]:
 
 
 def _curves(results: Results) -> Iterator[Picture]:
-    """One figure an ask and unit; one a quantity if further parameters make a family of each."""
+    """One figure for the quantities of an ask that share an axis; one a quantity if further parameters make a family of each."""
     family = len(axis_parameter(results)[1]) > 0
     for ask in dict.fromkeys(ask for point in results.points for ask in point.quantities):
-        for unit, members in quantities_by_unit(results, ask).items():
+        for (unit, alone), members in quantity_groups(results, ask).items():
             zero = zero_everywhere(results, ask, members)
             shown = [name for name in members if name not in zero]
             without = f" Zero at every point: {', '.join(quantity_words(name) for name in zero)}." if zero else ""
             for names in [[name] for name in shown] if family else [shown] if shown else []:
-                stem = file_word("_".join([ask, names[0]] if family else [ask] if unit == "1" else [ask, unit.replace("^", "")]))
-                words = f"{ask_words(ask)} over the series{': ' + quantity_words(names[0]) if family else ''}.{without}"
+                last = names[0] if family else alone or ("" if unit == "1" else unit.replace("^", ""))
+                stem = file_word(f"{ask}_{last}" if last else ask)
+                words = f"{ask_words(ask)} over the series{': ' + quantity_words(names[0] if family else alone) if family or alone else ''}.{without}"
                 yield Picture(stem, words, ANSWERS, draw_curve(results, ask, unit, names), *curve_rows(results, ask, names))
 
 
@@ -111,7 +113,7 @@ def _fields(results: Results, point: PointResult, ending: str, where: str) -> It
         if last == "field_map_e2":
             plane = point.arrays[name].attributes.get("plane", "")
             words = f"|E|² over |E|² of the incident wave alone, plane {plane}, finest grid{where}."
-            yield Picture(f"{stem}field_map{ending}", words, FIELDS, draw_field_map(point, prefix), *map_rows(point, prefix))
+            yield Picture(f"{stem}field_map{ending}", words, FIELDS, draw_field_map(point, prefix, *_marks(results, point, name)), *map_rows(point, prefix))
             continue
         plane_deg = incidence_deg(results, point) if point.arrays[name].unit == "nm^2/sr" else None
         of = f" of {prefix[:-1].replace('_', ' ')}" if prefix else ""
@@ -120,6 +122,22 @@ def _fields(results: Results, point: PointResult, ending: str, where: str) -> It
         yield Picture(f"{stem}pattern_cuts{ending}", words, FIELDS, cuts, *cut_rows(point, prefix, plane_deg))
         words = f"Far-field pattern{of} over the direction cosines, finest grid{where}."
         yield Picture(f"{stem}pattern_discs{ending}", words, FIELDS, draw_pattern_discs(point, prefix), *pattern_rows(point, prefix))
+
+
+def _marks(results: Results, point: PointResult, name: str) -> tuple[list[float], list[tuple[int, float, float]]]:
+    """What to mark on the map `name`: heights of the interfaces in nm, and (number, u, v) of the spots on its plane."""
+    found = point.arrays[name]
+    interfaces = [0.0]
+    for number, layer in enumerate(results.sketch.layers[1:-1] if results.sketch else (), 1):
+        interfaces.append(interfaces[-1] - float(point.parameters.get(f"stack.films[{number}].thickness_nm", layer["thickness_nm"])))
+    near = [ask for ask in results.resolved.get("ask", ()) if ask.get("what") == "near field"]
+    spots = [spot for ask in near for spot in ask.get("points_nm") or ()]
+    along_u, along_v = ("xyz".index(axis) for axis, _ in found.axes)
+    across = 3 - along_u - along_v
+    at = re.search(r"= (\S+) nm", found.attributes.get("plane", ""))
+    if at is None:
+        return interfaces, []
+    return interfaces, [(n, s[along_u], s[along_v]) for n, s in enumerate(spots, 1) if abs(s[across] - float(at[1])) <= _ON_PLANE_NM]
 
 
 def incidence_deg(results: Results, point: PointResult) -> float:
@@ -149,5 +167,7 @@ def save_sketch(sketch: Sketch, path) -> Path:
 
 
 def save_material_plot(name: str, table, citation: str, path) -> Path:
-    """Plot n and k of a table (n, 3) into a PNG file."""
-    return save(draw_material(name, table, citation), Path(path))
+    """Plot n and k of a table (n, 3) into a PNG file, the table as CSV beside it."""
+    path = Path(path)
+    write_csv(path.with_suffix(".csv"), ["wavelength (nm)", "n", "k"], np.asarray(table, dtype=float).tolist())
+    return save(draw_material(name, table, citation), path)

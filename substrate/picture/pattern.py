@@ -87,7 +87,7 @@ def draw_pattern_discs(point: PointResult, prefix: str = "") -> Figure:
         axes.set_xlabel("sin(polar) cos(azimuth)")
         if number == 1:
             axes.set_ylabel("sin(polar) sin(azimuth)")
-        axes.set_title(side, fontsize=10, color=FAINT)
+        axes.set_title("above" if side == "above" else "below, seen from above", fontsize=10, color=FAINT)
         figure.colorbar(mesh, ax=axes).set_label(label("pattern", pattern.unit))
     return figure
 

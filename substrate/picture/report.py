@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import base64
 import io
+import math
 from collections.abc import Iterable
 from html import escape
 from pathlib import Path
@@ -20,7 +21,9 @@ body { font: 16px/1.5 Georgia, 'Times New Roman', serif; color: #222; background
 h1 { font-size: 1.7rem; line-height: 1.2; margin-bottom: .2rem; overflow-wrap: anywhere; }
 h2 { font-size: 1.15rem; margin: 2.2rem 0 .6rem; border-bottom: 1px solid #bbb; padding-bottom: .2rem; }
 h3 { font-size: 1rem; margin: 1.2rem 0 .4rem; }
-.small { color: #666; font-size: .85rem; }
+.small { color: #666; font-size: .85rem; font-weight: normal; }
+td.point { white-space: nowrap; }
+.series td.value { font-weight: normal; }
 .scroll { overflow-x: auto; }
 table { border-collapse: collapse; width: 100%; font-size: .92rem; }
 th, td { text-align: left; vertical-align: top; padding: .3rem .8rem .3rem 0; border-bottom: 1px solid #e3e3e3; }
@@ -32,12 +35,19 @@ figcaption { color: #555; font-size: .85rem; }
 pre { background: #f6f6f3; padding: 1rem; overflow-x: auto; font-size: .8rem; line-height: 1.35; }
 .guard { border-left: 4px solid #D55E00; padding: .2rem 0 .2rem .8rem; margin: .5rem 0; }
 .caution { border-left: 4px solid #0072B2; padding: .2rem 0 .2rem .8rem; margin: .5rem 0; }
+@media (max-width: 42rem) {
+  body { margin: 1rem auto; } figure { overflow-x: auto; } figure img { max-width: none; width: 42rem; } td.words { min-width: 0; }
+  .stack table, .stack tbody, .stack tr, .stack td { display: block; } .stack th { display: none; }
+  .stack tr { border-bottom: 1px solid #bbb; padding: .3rem 0; } .stack td { border: none; padding: 0; white-space: normal; }
+}
 @media print {
   body { margin: 0; max-width: none; font-size: 11pt; } h2, h3 { break-after: avoid; } tr { break-inside: avoid; }
-  .scroll, pre { overflow: visible; } pre { white-space: pre-wrap; } td.value { white-space: normal; }
+  .scroll, pre { overflow: visible; } pre { white-space: pre-wrap; } td.value, td.point { white-space: normal; }
+  .series table { font-size: 7pt; } .series th, .series td { padding: .15rem .3rem .15rem 0; }
 }
 """
 
+LONG_SERIES = 12  # points: longer series are summed up first, the table of all points stands at the end
 _CONVENTIONS = (
     "Time factor exp(-i omega t), index n + ik with k at least 0. Lengths in nm, vacuum wavelengths too; angles in degrees. z points up, z = 0 "
     "is the top of the stack, the host is above. Cross sections are powers over the irradiance of the incident wave alone, taken normal to its "
@@ -71,6 +81,7 @@ def report_html(results: Results) -> str:
         _section("Convergence", figures.get(CONVERGENCE, "")),
         _section("Warnings", _warnings(results)),
         _section("Cautions", "".join(f"<p class='caution'>{escape(text)}</p>" for text in cautions(results))),
+        _section("All points", _all_points(results) if len(results.points) > LONG_SERIES else ""),
         _section("How it was computed", _methods(results)),
         _section("Materials", _materials(results)),
         _section("Conventions", f"<p>{escape(_CONVENTIONS)}</p>"),
@@ -102,7 +113,10 @@ def _head(results: Results) -> str:
 def _answers(results: Results) -> str:
     if not results.points:
         return "<p>No point is finished.</p>"
-    return _one_point(results.points[0]) if len(results.points) == 1 else _series(results)
+    if len(results.points) == 1:
+        return _one_point(results.points[0])
+    answers = _summary(results) if len(results.points) > LONG_SERIES else _all_points(results) + _definitions(results)
+    return answers + "".join(_reason(point) for point in results.points if point.status != FINISHED)
 
 
 def _one_point(point: PointResult) -> str:
@@ -113,25 +127,52 @@ def _one_point(point: PointResult) -> str:
             f"<td class='words'>{escape(quantity.definition)}</td></tr>"
             for name, quantity in named.items()
         )
-        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('quantity', 'value', 'definition'), rows)}")
+        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('quantity', 'value', 'definition'), rows, 'stack')}")
     return "".join(out)
 
 
-def _series(results: Results) -> str:
-    """One table an ask: points down, quantities across; the definitions below, once."""
+def _named(results: Results) -> dict[str, dict[str, list[tuple[PointResult, Quantity]]]]:
+    """All answers of a series: {ask: {name: (point, quantity) of every point that has it}}."""
+    found: dict[str, dict[str, list[tuple[PointResult, Quantity]]]] = {}
+    for point in results.points:
+        for ask, named in point.quantities.items():
+            for name, quantity in named.items():
+                found.setdefault(ask, {}).setdefault(name, []).append((point, quantity))
+    return found
+
+
+def _all_points(results: Results) -> str:
+    """One table an ask: points down, quantities across."""
     out = []
-    for ask in dict.fromkeys(ask for point in results.points for ask in point.quantities):
-        definitions: dict[str, str] = {}
-        for point in results.points:
-            for name, quantity in point.quantities.get(ask, {}).items():
-                definitions.setdefault(name, quantity.definition)
-        rows = "".join(_series_row(point, ask, definitions) for point in results.points)
-        notes = "".join(
-            f"<tr><td>{escape(quantity_words(name))}</td><td class='words'>{escape(text)}</td></tr>" for name, text in definitions.items()
+    for ask, names in _named(results).items():
+        rows = "".join(_series_row(point, ask, names) for point in results.points)
+        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('point', *map(quantity_words, names)), rows, 'series')}")
+    return "".join(out)
+
+
+def _definitions(results: Results) -> str:
+    """What the columns of the tables mean."""
+    out = []
+    for ask, names in _named(results).items():
+        rows = "".join(
+            f"<tr><td>{escape(quantity_words(name))}</td><td class='words'>{escape(found[0][1].definition)}</td></tr>" for name, found in names.items()
         )
-        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('point', *map(quantity_words, definitions)), rows)}")
-        out.append(f"<h3>What they mean</h3>{_table(('quantity', 'definition'), notes)}")
-    return "".join(out) + "".join(_reason(point) for point in results.points if point.status != FINISHED)
+        out.append(f"<h3>{escape(ask_words(ask))}: definitions</h3>{_table(('quantity', 'definition'), rows, 'stack')}")
+    return "".join(out)
+
+
+def _summary(results: Results) -> str:
+    """Smallest and largest value of each quantity over the series, where they are, and its definition."""
+    out = [f"<p class='small'>The smallest and the largest values of {len(results.points)} points; the table of all points stands further below.</p>"]
+    for ask, names in _named(results).items():
+        rows = ""
+        for name, found in names.items():
+            known = [pair for pair in found if math.isfinite(pair[1].value)] or found
+            ends = (min(known, key=lambda pair: pair[1].value), max(known, key=lambda pair: pair[1].value))
+            cells = "".join(f"<td class='value'>{_value(quantity)}<br><span class='small'>{escape(point_words(point))}</span></td>" for point, quantity in ends)
+            rows += f"<tr><td>{escape(quantity_words(name))}</td>{cells}<td class='words'>{escape(found[0][1].definition)}</td></tr>"
+        out.append(f"<h3>{escape(ask_words(ask))}</h3>{_table(('quantity', 'smallest', 'largest', 'definition'), rows, 'stack')}")
+    return "".join(out)
 
 
 def _series_row(point: PointResult, ask: str, names: Iterable[str]) -> str:
@@ -139,7 +180,7 @@ def _series_row(point: PointResult, ask: str, names: Iterable[str]) -> str:
     missing = "-" if point.status == FINISHED else escape(point.status)
     cells = "".join(f"<td class='value'>{_value(named[name]) if name in named else missing}</td>" for name in names)
     place = point_words(point) + (f" ({point.status})" if point.status != FINISHED else "")
-    return f"<tr><td>{escape(place)}</td>{cells}</tr>"
+    return f"<tr><td class='point'>{escape(place)}</td>{cells}</tr>"
 
 
 def _reason(point: PointResult) -> str:
@@ -151,9 +192,10 @@ def _value(quantity: Quantity) -> str:
     return escape(quantity_text(quantity))
 
 
-def _table(heads: Iterable[str], rows: str) -> str:
+def _table(heads: Iterable[str], rows: str, kind: str = "") -> str:
+    """kind: "stack" for tables whose rows fall apart into lines on narrow screens, "series" for one row a point."""
     head = "".join(f"<th>{escape(words)}</th>" for words in heads)
-    return f"<div class='scroll'><table><tr>{head}</tr>{rows}</table></div>"
+    return f"<div class='scroll {kind}'><table><tr>{head}</tr>{rows}</table></div>"
 
 
 # ---- figures and what is said about them

@@ -18,6 +18,7 @@ _ARC = 0.085  # of the radius: from one collector's arc to the next
 _FILMS_COUNT = 100.0  # nm: films widen the view no further if there is something above them
 _MOST_NAMES = 11  # names of films in the column; more are counted
 _PARTICLE_COLOURS = (COLOURS[4], COLOURS[5], COLOURS[3], COLOURS[2])
+_ARROW = {"color": COLOURS[1], "shrinkA": 0, "shrinkB": 0}
 _AXES = {"x": (1.0, 0.0), "z": (0.0, 1.0), "vertical": (0.0, 1.0), "horizontal": (1.0, 0.0)}
 
 
@@ -202,7 +203,7 @@ def _emitters(axes, sketch: Sketch, view: _View) -> list[_Name]:
         for dx, dz in _moments(orientation):
             if math.hypot(dx, dz) > 0.05:
                 ends = (x - size * dx, z - size * dz), (x + size * dx, z + size * dz)
-                axes.annotate("", *ends, arrowprops={"arrowstyle": "<|-|>", "color": COLOURS[1], "linewidth": 1.4, "mutation_scale": 8, "shrinkA": 0, "shrinkB": 0})
+                axes.annotate("", *ends, arrowprops={"arrowstyle": "<|-|>", "linewidth": 1.4, "mutation_scale": 8, **_ARROW})
         if orientation == "y":  # an arrow seen from its tip
             axes.plot(x, z, marker="o", markersize=11, markerfacecolor="none", markeredgecolor=COLOURS[1], markeredgewidth=1.4, linestyle="none")
         axes.plot(x, z, marker="o", markersize=6, color=COLOURS[1], markeredgecolor=INK, linestyle="none")
@@ -232,14 +233,16 @@ def _light(axes, light: dict, view: _View) -> None:
     far = 0.95 * min(room / max(abs(dz), 1e-9), (view.middle - view.left) / max(dx, 1e-9))
     near = (0.72 if above else 0.3) * far
     start, end = ((middle[0] - r * dx, middle[1] - r * dz) for r in (far, near))
-    axes.annotate("", end, start, arrowprops={"arrowstyle": "-|>", "color": COLOURS[1], "linewidth": 2.4, "mutation_scale": 17, "shrinkA": 0, "shrinkB": 0})
+    axes.annotate("", end, start, arrowprops={"arrowstyle": "-|>", "linewidth": 2.4, "mutation_scale": 17, **_ARROW})
     steep = light["angle_deg"] < 45.0
     words = f"light, {light['angle_deg']:g} deg, {light['polarization']}"
     if light.get("azimuth_deg"):
         words += f", azimuth {light['azimuth_deg']:g} deg"
     box = {"facecolor": "white", "edgecolor": "none", "alpha": 0.8, "pad": 1.0}
-    lift = 7 if above else -7
-    place = {"xytext": (-7, 0), "ha": "right", "va": "top" if above else "bottom"} if steep else {"xytext": (0, lift), "ha": "left", "va": "bottom" if above else "top"}
+    if steep:
+        place = {"xytext": (-7, 0), "ha": "right", "va": "top" if above else "bottom"}
+    else:
+        place = {"xytext": (0, 7 if above else -7), "ha": "left", "va": "bottom" if above else "top"}
     axes.annotate(words, start, textcoords="offset points", fontsize=8, color=COLOURS[1], bbox=box, annotation_clip=False, **place)
 
 

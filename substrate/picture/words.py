@@ -96,9 +96,12 @@ def finite_error(quantity: Quantity) -> float | None:
 
 
 def quantity_text(quantity: Quantity) -> str:
-    """Value, bar and unit; a bar that is no number is no bar."""
-    if quantity.error is not None and math.isnan(quantity.error):
+    """Value, bar and unit; a bar that is no number is no bar, and one beyond the seventh digit is told by its size only."""
+    value, error = quantity.value, quantity.error
+    if error is not None and math.isnan(error):
         quantity = replace(quantity, error=None)
+    elif error is not None and 0.0 < error < 1e-6 * abs(value):
+        return f"{value:.7g} ± {error:.0e} {unit_words(quantity.unit)}".rstrip()
     return raised(str(quantity))
 
 

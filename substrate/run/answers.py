@@ -105,7 +105,7 @@ def convergence(answer, extent_nm: float | None, units: Mapping[str, str], prefi
             out[f"{folder}/cells_across"] = ArrayResult(extent_nm / cell, "1", "cells across the smallest extent of the particles", axes)
         out[f"{folder}/cell_nm"] = ArrayResult(cell, "nm", "edge of a cell", axes)
         out[f"{folder}/values"] = ArrayResult(np.asarray(found.values, dtype=float), unit, f"{name} on each grid", axes)
-        words = "coefficients c of c0 + c1 h + c2 h^2, h the cell in nm; c0 is the answer"
+        words = "coefficients c of c0 + c1 h + c2 h^2, h the cell in nm; c0 is the value at cells of size zero"
         out[f"{folder}/fit"] = ArrayResult(np.asarray(found.fit, dtype=float), unit, words, (("power of h", "1"),), found.error)
     return out
 

@@ -7,13 +7,12 @@ import numpy as np
 import pytest
 
 from substrate.picture.convergence import approaches, draw_convergence, least_certain
-from substrate.picture.curve import axis_parameter, curves, draw_balance, draw_curve
+from substrate.picture.curve import axis_parameter, curves, draw_balance, draw_curve, quantity_groups
 from substrate.picture.field_map import colour_scale, draw_field_map
-from substrate.picture.figure import incidence_deg, save_material_plot, save_sketch
+from substrate.picture.figure import incidence_deg, pictures, save_material_plot, save_sketch
 from substrate.picture.pattern import draw_pattern_cuts, draw_pattern_discs, pattern_of
-from substrate.picture.sketch import draw_sketch
 from substrate.quantity import Quantity
-from substrate.run.results import ArrayResult
+from substrate.run.results import ArrayResult, PointResult
 from tests.picture.samples import hot_spot, lifetimes, wafer
 
 
@@ -143,7 +142,7 @@ def test_azimuth_of_the_light_comes_from_the_series_or_the_case():
 
 def test_discs_show_the_sides_that_there_are():
     titles = [axes.get_title() for axes in draw_pattern_discs(hot_spot().points[0]).axes]
-    assert titles[:2] == ["above", ""] and "below" in titles
+    assert titles[:2] == ["above", ""] and "below, seen from above" in titles
     axes, bar = draw_pattern_discs(wafer().points[0]).axes
     assert (axes.get_title(), axes.get_xlabel(), bar.get_ylabel()) == ("above", "sin(polar) cos(azimuth)", "pattern (nm²/sr)")
 
@@ -181,14 +180,97 @@ def test_least_certain_point_of_a_series():
     assert least_certain(lifetimes()) is None
 
 
-def test_sketch_names_everything_and_says_what_is_cut():
-    texts = " | ".join(text.get_text() for text in draw_sketch(lifetimes().sketch).axes[0].texts)
-    for words in ("water", "n = 1.33", "sphere 1, gold", "emitter, vertical", "gold, 900 nm", "cut", "silica, 1.5 nm", "objective", "silicon", " nm"):
-        assert words in texts
-    assert "light, 65 deg, p" in " | ".join(text.get_text() for text in draw_sketch(hot_spot().sketch).axes[0].texts)
-
-
 def test_sketch_and_material_plot_files(tmp_path):
     assert save_sketch(hot_spot().sketch, tmp_path / "s.png").stat().st_size > 5000
     path = save_material_plot("gold", np.array([[400.0, 1.5, 1.9], [800.0, 0.2, 4.9]]), "A. Author (1900)", tmp_path / "m.png")
     assert path.stat().st_size > 5000
+
+
+def marks(axes):
+    """Words and points of what is marked on a map."""
+    texts = [text.get_text() for text in axes.texts]
+    lines = [(list(line.get_xdata()), list(line.get_ydata())) for line in axes.lines]
+    return texts, lines
+
+
+def test_field_map_marks_the_spots_on_its_plane_and_the_interfaces():
+    near = {"what": "near field", "points_nm": [[0.0, 0.0, 2.5], [38.0, 20.0, 35.0], [-40.0, 0.0, 60.0]]}
+    results = replace(hot_spot(), resolved={"ask": [near]})
+    point = results.points[0]
+    deep = replace(point.arrays["field_map_v_nm"], values=np.linspace(-70, 81, 25))
+    point = replace(point, arrays={**point.arrays, "field_map_v_nm": deep})
+    (picture,) = (picture for picture in pictures(replace(results, points=(point,))) if picture.stem == "field_map")
+    texts, lines = marks(picture.figure.axes[0])
+    assert texts == ["surface", "spot 1", "spot 3"]  # the second one lies 20 nm off the plane
+    assert ([0.0], [2.5]) in lines and ([-40.0], [60.0]) in lines
+    assert [ys[0] for xs, ys in lines if len(ys) == 2] == [0.0, -60.0, -61.5]
+
+
+def test_interfaces_follow_a_series_of_thicknesses():
+    results = hot_spot()
+    point = replace(results.points[0], parameters={"stack.films[1].thickness_nm": 20.0})
+    deep = replace(point.arrays["field_map_v_nm"], values=np.linspace(-70, 81, 25))
+    point = replace(point, arrays={**point.arrays, "field_map_v_nm": deep})
+    (picture,) = (picture for picture in pictures(replace(results, points=(point,))) if picture.stem == "field_map")
+    assert [ys[0] for _, ys in marks(picture.figure.axes[0])[1]] == [0.0, -20.0, -21.5]
+
+
+def series_of(values: dict[str, list[float]], ask="emission", key="emitter[1].position_nm.z", places=None):
+    """Points along one parameter with the values of each quantity, bars of a tenth."""
+    count = len(next(iter(values.values())))
+    points = []
+    for i, place in enumerate(places or [float(i) for i in range(count)]):
+        named = {name: Quantity(numbers[i], 0.1 * abs(numbers[i]), "1", name) for name, numbers in values.items()}
+        points.append(PointResult(str(place), {key: place}, quantities={ask: named}))
+    return replace(lifetimes(), points=tuple(points))
+
+
+def test_yields_share_no_axis_with_rates():
+    results = series_of({"total": [1.0, 2.0], "quantum_yield": [0.5, 0.2], "lifetime_ratio": [1.0, 0.5], "balance": [0.0, 1e-9]})
+    groups = quantity_groups(results, "emission")
+    assert list(groups.values()) == [["total"], ["quantum_yield"], ["lifetime_ratio"]]
+    drawn = {picture.stem: picture for picture in pictures(results) if picture.stem.startswith("emission")}
+    assert set(drawn) == {"emission", "emission_quantum_yield", "emission_lifetime_ratio"}
+    assert drawn["emission_quantum_yield"].figure.axes[0].get_ylabel() == "quantum yield"
+
+
+def test_a_negligible_curve_does_not_choose_the_scale():
+    results = series_of({"total": [1.0, 2.0, 1.5], "down": [1e-4, 1e-5, 1e-6]})
+    figure = draw_curve(results, "emission", "1", ["total", "down"])
+    assert figure.axes[0].get_yscale() == "linear" and legend(figure) == ["total", "down (at most 0.0001)"]
+    wide = draw_curve(series_of({"total": [1.0, 20.0, 150.0]}), "emission", "1", ["total"])
+    assert wide.axes[0].get_yscale() == "log"
+
+
+def test_shares_stay_on_a_linear_axis():
+    results = series_of({"reflected": [0.9, 0.001, 0.8]}, "reflectance", "light.angle_deg")
+    assert draw_curve(results, "reflectance", "1", ["reflected"]).axes[0].get_yscale() == "linear"
+
+
+def test_a_series_of_words_is_drawn_over_its_words():
+    results = series_of({"total": [1.0, 2.0]}, key="light.polarization", places=["s", "p"])
+    assert axis_parameter(results) == ("light.polarization", ())
+    (axes,) = draw_curve(results, "emission", "1", ["total"]).axes
+    assert [text.get_text() for text in axes.get_xticklabels()] == ["s", "p"] and axes.get_xlabel() == "light: polarization"
+    assert axes.containers[0].lines[0].get_linestyle() == "None"  # nothing lies between words
+
+
+def test_bars_that_are_no_numbers_are_no_bars():
+    results = series_of({"total": [1.0, 2.0, 3.0]})
+    named = [{"total": Quantity(float(i + 1), error, "1", "total")} for i, error in enumerate((float("nan"), None, 0.5))]
+    points = [replace(point, quantities={"emission": quantities}) for point, quantities in zip(results.points, named)]
+    results = replace(results, points=tuple(points))
+    (curve,) = curves(results, "emission", ["total"])
+    assert np.isnan(curve.bars).tolist() == [True, True, False]
+    assert draw_curve(results, "emission", "1", ["total"]).axes[0].get_xlabel() == "emitter 1: position z (nm)"
+
+
+def test_material_plot_leaves_its_table_beside_it(tmp_path):
+    save_material_plot("gold", np.array([[400.0, 1.5, 1.9], [800.0, 0.2, 4.9]]), "A. Author (1900)", tmp_path / "gold.png")
+    assert read(tmp_path / "gold.csv") == [["wavelength (nm)", "n", "k"], ["400.0", "1.5", "1.9"], ["800.0", "0.2", "4.9"]]
+
+
+def test_near_field_axis_says_what_and_where():
+    results = series_of({"spot_1": [1.0, 2.0], "spot_2": [3.0, 4.0]}, "near_field")
+    assert draw_curve(results, "near_field", "1", ["spot_1"]).axes[0].get_ylabel() == "|E|² / |E incident|², spot 1"
+    assert draw_curve(results, "near_field", "1", ["spot_1", "spot_2"]).axes[0].get_ylabel() == "|E|² / |E incident|²"

@@ -8,6 +8,8 @@ import pytest
 from substrate.picture import report
 from substrate.picture.cautions import cautions
 from substrate.picture.report import report_html
+from substrate.picture.words import parameter_words, quantity_text
+from substrate.quantity import Quantity
 from tests.picture.conftest import MAKERS
 from tests.picture.samples import hot_spot, lifetimes, wafer
 
@@ -55,7 +57,7 @@ def test_the_case_is_there_verbatim(pages):
 def test_failed_points_are_shown_with_their_reason(pages):
     page = pages["lifetimes"]
     assert "<td class='value'>failed</td>" in page and "failed. the reason &amp; why" in page and "1 of 12 points failed" in page
-    assert "<td>diameter 150 nm, polarization s (not converged)</td>" in pages["wafer"]
+    assert "<td class='point'>diameter 150 nm, polarization s (not converged)</td>" in pages["wafer"]
     assert "not converged. the iteration stopped at 1e-3" in pages["wafer"]
 
 
@@ -87,3 +89,34 @@ def test_cautions_concern_the_case():
     assert called(hot_spot(), "largest value of a map") and not called(wafer(), "largest value of a map")
     assert called(lifetimes(), "Lifetimes and yields") and not called(wafer(), "Lifetimes and yields")
     assert all(called(make(), "local bulk optical constants") for make in MAKERS.values())
+
+
+def test_a_long_series_is_summed_up_before_the_table_of_all_points(no_figures):
+    results = lifetimes()
+    points = [replace(point, parameters={"emitter[1].position_nm.z": 5.0 + i}) for i, point in enumerate(results.points + results.points)]
+    page = report_html(replace(results, points=tuple(points), planned_points=24))
+    summary, _, table = page.partition("<h2>All points</h2>")
+    assert "<th>smallest</th><th>largest</th>" in summary and table.count("<td class='point'>") == 24
+    assert "36.78 ± 0.37<br><span class='small'>position z 5 nm</span>" in summary
+    assert "<h2>All points</h2>" not in report_html(results)  # twelve points fit into the answer
+
+
+def test_bars_too_small_to_read_are_told_by_their_size():
+    assert quantity_text(Quantity(1.3383923163, 1.4e-9, "1", "")) == "1.338392 ± 1e-09"
+    assert quantity_text(Quantity(2.0, float("nan"), "nm^2", "")) == "2 nm² (no error bar)"
+    assert quantity_text(Quantity(2.0, 0.1, "nm^2", "")) == "2.00 ± 0.10 nm²"
+
+
+@pytest.mark.parametrize(
+    "key, words",
+    [
+        ("emitter[1].position_nm.z", ("emitter 1: position z", "nm")),
+        ("stack.films[2].thickness_nm", ("film 2: thickness", "nm")),
+        ("light.angle_deg", ("light: angle", "deg")),
+        ("collector[1].polar_deg[2]", ("collector 1: polar 2", "deg")),
+        ("light.polarization", ("light: polarization", "")),
+        ("particle[1].diameter_nm", ("particle 1: diameter", "nm")),
+    ],
+)
+def test_series_parameters_in_words(key, words):
+    assert parameter_words(key) == words
