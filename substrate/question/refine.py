@@ -17,6 +17,7 @@ from substrate.quantity import Quantity
 
 GRIDS = 9
 MOST_BOX_CELLS = 6_000_000
+COMFORTABLE_BOX_CELLS = 400_000
 _SECONDS_PER_CELL = 6e-7  # of one product in single precision, per box cell, on two cores: for estimates only
 _BYTES_PER_CELL = 520
 _STRONG = 2.2  # |index| of particle over host above which 24 cells across are not enough
@@ -98,16 +99,24 @@ def plan_grids(particles: Sequence, layers, accuracy: float, cell_nm: float | No
         finest = max(finest, 2.0 * contrast * layers.k_host * extent / 2.0)
         if math.isfinite(clearance_nm) and contrast > _STRONG:
             finest = max(finest, min(48.0, 4.0 * extent / clearance_nm))
-        finest = float(math.ceil(finest))
+        finest = _comfortable(particles, extent, float(math.ceil(finest)), contrast * layers.k_host * extent)
     _check_size(particles, extent / finest)
     tolerance = solver_tolerance(accuracy, contrast)
     if quick:
         return GridPlan(extent, (finest,), tolerance)
-    if cell_nm is None:
+    if cell_nm is None and finest >= 16.0:
         across = sorted({round(finest * (0.5 + 0.5 * i / (GRIDS - 1))) for i in range(GRIDS)})
     else:
         across = [finest * (0.5 + 0.5 * i / (GRIDS - 1)) for i in range(GRIDS)]
     return GridPlan(extent, tuple(float(n) for n in across), tolerance)
+
+
+def _comfortable(particles: Sequence, extent: float, finest: float, least: float) -> float:
+    """Fewer cells across a thin particle of large area, so that the box stays moderate; never below 8, nor below the wavelength's need."""
+    box = _box_cells(particles, extent / finest)
+    if box <= COMFORTABLE_BOX_CELLS:
+        return finest
+    return min(finest, max(8.0, least, float(math.ceil(finest * (COMFORTABLE_BOX_CELLS / box) ** (1.0 / 3.0)))))
 
 
 def solver_tolerance(accuracy: float, contrast: float) -> float:

@@ -92,3 +92,10 @@ def test_estimate_grows_with_loss_free_metal():
     assert clean > 2.0 * lossy
     found = estimate(BALL, LAYERS, cell_nm=3.0)
     assert found.grids == GRIDS and found.cells_in_box == 8000 and 0.4 < found.occupied_cells / 8000 < 0.6
+
+
+def test_thin_plates_get_fewer_cells_across_but_still_nine_grids():
+    plate = [sb.Disc(material=2.0, diameter_nm=120.0, height_nm=4.0)]
+    plan = plan_grids(plate, LAYERS, 0.02, None, False)
+    assert plan.cells_across[-1] == 8.0 and len(plan.cells_across) == GRIDS
+    assert estimate(plate, LAYERS).cells_in_box < 500_000
