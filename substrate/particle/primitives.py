@@ -1,4 +1,4 @@
-"""Convex bodies in closed form: sphere, ellipsoid, rounded box, rounded disc, rod, rounded cone.
+"""Convex bodies in closed form: sphere, ellipsoid, rounded box, rounded disc, rod.
 
 Box and disc are the sum (in Minkowski's sense) of a smaller sharp body and a ball of the rounding radius, the rod that of a line and a
 ball; vertical chords and distances follow from those of the sharp body.
@@ -7,7 +7,7 @@ ball; vertical chords and distances follow from those of the sharp body.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from substrate.errors import InputError, Problem
 from substrate.particle.placement import Particle
@@ -20,13 +20,13 @@ class Sphere(Particle):
     diameter_nm: float
 
     def _check(self):
-        self._positive(diameter_nm=self.diameter_nm)
+        self._positive("diameter_nm")
 
     def half_extents(self):
         return (0.5 * self.diameter_nm,) * 3
 
     def _chord(self, x, y):
-        return _ball_chord(0.5 * self.diameter_nm, x * x + y * y)
+        return _raised(0.0, 0.5 * self.diameter_nm, x * x + y * y)
 
     def _distance(self, points):
         import numpy as np
@@ -37,8 +37,8 @@ class Sphere(Particle):
     def volume_nm3(self) -> float:
         return math.pi / 6.0 * self.diameter_nm**3
 
-    def grown(self, thickness_nm):
-        return replace(self, diameter_nm=self.diameter_nm + 2.0 * thickness_nm)
+    def grown(self, thickness_nm, **place):
+        return self._resized(place, diameter_nm=self.diameter_nm + 2.0 * thickness_nm)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -50,7 +50,8 @@ class Ellipsoid(Particle):
     tilt_deg: float = 0.0
 
     def _check(self):
-        self._three("diameters_nm", self.diameters_nm)
+        self._vector("diameters_nm", 3, "three lengths above 0 (a, b, c)", above=0.0)
+        self._finite("azimuth_deg", "tilt_deg")
 
     def _axes(self):
         """Unit vectors of the axes as rows."""
@@ -86,22 +87,30 @@ class Ellipsoid(Particle):
         return middle - half, middle + half
 
     def _distance(self, points):
-        """First order: f (f - 1)/|grad| with f^2 = x . Q x; exact on the surface, its sign everywhere."""
+        """t |p_i/(t + a_i^2)|, where t solves sum (a_i p_i/(t + a_i^2))^2 = 1: the nearest point of the surface is a_i^2 p_i/(t + a_i^2).
+
+        The sum falls and is convex in t, so that Newton's steps from the left, where one term alone makes it at least 1, never overshoot.
+        """
         import numpy as np
 
-        gradient = points @ self._matrix()
-        f = np.sqrt((points * gradient).sum(axis=1))
-        slope = np.linalg.norm(gradient, axis=1)
-        centre = slope < 1e-12 / min(self.diameters_nm)
-        return np.where(centre, -0.5 * min(self.diameters_nm), f * (f - 1.0) / np.where(centre, 1.0, slope))
+        half = 0.5 * np.asarray(self.diameters_nm, dtype=float)
+        own = np.maximum(np.abs(points @ self._axes().T), 1e-8 * half)  # off the planes on which two points may be nearest
+        t = (half * own - half**2).max(axis=1)
+        for _ in range(50):
+            ratio = half * own / (t[:, None] + half**2)
+            step = ((ratio**2).sum(axis=1) - 1.0) / (2.0 * ratio**2 / (t[:, None] + half**2)).sum(axis=1)
+            t += step
+            if (np.abs(step) <= 1e-14 * (np.abs(t) + half.max() ** 2)).all():
+                break
+        return t * np.linalg.norm(own / (t[:, None] + half**2), axis=1)
 
     @property
     def volume_nm3(self) -> float:
         return math.pi / 6.0 * math.prod(self.diameters_nm)
 
-    def grown(self, thickness_nm):
+    def grown(self, thickness_nm, **place):
         """All axes longer by the thickness at both ends: constant thickness on the axes only."""
-        return replace(self, diameters_nm=tuple(d + 2.0 * thickness_nm for d in self.diameters_nm))
+        return self._resized(place, diameters_nm=tuple(d + 2.0 * thickness_nm for d in self.diameters_nm))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -113,8 +122,9 @@ class Box(Particle):
     azimuth_deg: float = 0.0
 
     def _check(self):
-        self._three("size_nm", self.size_nm)
-        _check_radius(self, "edge_radius_nm", self.edge_radius_nm, 0.5 * min(self.size_nm), "half the shortest edge")
+        self._vector("size_nm", 3, "three lengths above 0 (x, y, z)", above=0.0)
+        self._finite("azimuth_deg")
+        self._radius("edge_radius_nm", 0.5 * min(self.size_nm), "half the shortest edge")
 
     def _core(self):
         return tuple(0.5 * s - self.edge_radius_nm for s in self.size_nm)
@@ -137,6 +147,12 @@ class Box(Particle):
         square = np.maximum(np.abs(u) - a, 0.0) ** 2 + np.maximum(np.abs(v) - b, 0.0) ** 2
         return _raised(c, self.edge_radius_nm, square)
 
+    def silhouette_corners(self):
+        (a, b, _), r, (x0, y0, _) = self._core(), self.edge_radius_nm, self.center
+        cosine, sine = math.cos(math.radians(self.azimuth_deg)), math.sin(math.radians(self.azimuth_deg))
+        own = [(i * u, j * v) for i in (-1, 1) for j in (-1, 1) for u, v in {(a + r, b), (a, b + r)}]
+        return [(x0 + cosine * u - sine * v, y0 + sine * u + cosine * v) for u, v in own]
+
     def _distance(self, points):
         import numpy as np
 
@@ -150,10 +166,10 @@ class Box(Particle):
         r = self.edge_radius_nm
         return a * b * c + 2.0 * r * (a * b + b * c + c * a) + math.pi * r * r * (a + b + c) + 4.0 * math.pi / 3.0 * r**3
 
-    def grown(self, thickness_nm):
+    def grown(self, thickness_nm, **place):
         """Exact: rounding grows with the layer."""
         size = tuple(s + 2.0 * thickness_nm for s in self.size_nm)
-        return replace(self, size_nm=size, edge_radius_nm=self.edge_radius_nm + thickness_nm)
+        return self._resized(place, size_nm=size, edge_radius_nm=self.edge_radius_nm + thickness_nm)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -165,9 +181,9 @@ class Disc(Particle):
     rim_radius_nm: float = 0.0
 
     def _check(self):
-        self._positive(diameter_nm=self.diameter_nm, height_nm=self.height_nm)
+        self._positive("diameter_nm", "height_nm")
         most = 0.5 * min(self.diameter_nm, self.height_nm)
-        _check_radius(self, "rim_radius_nm", self.rim_radius_nm, most, "half the smaller of diameter and height")
+        self._radius("rim_radius_nm", most, "half the smaller of diameter and height")
 
     def half_extents(self):
         return (0.5 * self.diameter_nm, 0.5 * self.diameter_nm, 0.5 * self.height_nm)
@@ -195,10 +211,10 @@ class Disc(Particle):
         flat = math.pi * big * big * tall
         return flat + 2.0 * math.pi * big * tall * r + 2.0 * math.pi * big * big * r + math.pi * r * r * (math.pi * big + tall) + 4.0 * math.pi / 3.0 * r**3
 
-    def grown(self, thickness_nm):
+    def grown(self, thickness_nm, **place):
         """Exact: rounding grows with the layer."""
-        return replace(
-            self,
+        return self._resized(
+            place,
             diameter_nm=self.diameter_nm + 2.0 * thickness_nm,
             height_nm=self.height_nm + 2.0 * thickness_nm,
             rim_radius_nm=self.rim_radius_nm + thickness_nm,
@@ -215,7 +231,8 @@ class Rod(Particle):
     tilt_deg: float = 0.0
 
     def _check(self):
-        self._positive(diameter_nm=self.diameter_nm, length_nm=self.length_nm)
+        self._positive("diameter_nm", "length_nm")
+        self._finite("azimuth_deg", "tilt_deg")
         if self.length_nm < self.diameter_nm:
             raise InputError(Problem("rod length_nm", self.length_nm, f"at least the diameter ({self.diameter_nm:g} nm)", "For a flat body take a disc."))
 
@@ -237,11 +254,12 @@ class Rod(Particle):
         if flat < 1e-12:
             return _raised(half, r, x * x + y * y)
         s, across = (ux * x + uy * y) / flat, (ux * y - uy * x) / flat
-        width = np.sqrt(np.maximum(r * r - across * across, 0.0))
+        reach = r * r - across * across
+        width = np.sqrt(np.maximum(reach, 0.0))
         ends = []
         for sign in (-1.0, 1.0):
-            t = np.clip((s + sign * uz * width) / flat, -half, half)
-            square = r * r - across**2 - (s - flat * t) ** 2
+            t = np.minimum(np.maximum((s + sign * uz * width) / flat, -half), half)
+            square = reach - (s - flat * t) ** 2
             ends.append((uz * t + sign * np.sqrt(np.maximum(square, 0.0)), square >= 0.0))
         hit = ends[0][1] & ends[1][1]
         return np.where(hit, ends[0][0], 1.0), np.where(hit, ends[1][0], -1.0)
@@ -259,93 +277,8 @@ class Rod(Particle):
         r = 0.5 * self.diameter_nm
         return math.pi * r * r * (self.length_nm - 2.0 * r) + 4.0 * math.pi / 3.0 * r**3
 
-    def grown(self, thickness_nm):
-        return replace(self, diameter_nm=self.diameter_nm + 2.0 * thickness_nm, length_nm=self.length_nm + 2.0 * thickness_nm)
-
-
-@dataclass(frozen=True, kw_only=True)
-class Cone(Particle):
-    """A circular cone about z with a ball of tip_radius_nm as its tip, tangent to the side; height_nm is the whole. points: "up" or "down"."""
-
-    base_diameter_nm: float
-    height_nm: float
-    tip_radius_nm: float
-    points: str = "up"
-
-    def _check(self):
-        self._positive(base_diameter_nm=self.base_diameter_nm, height_nm=self.height_nm, tip_radius_nm=self.tip_radius_nm)
-        most = min(0.5 * self.base_diameter_nm, 0.5 * self.height_nm)
-        if self.tip_radius_nm >= most:
-            raise InputError(Problem("cone tip_radius_nm", self.tip_radius_nm, f"below half of base diameter and of height ({most:g} nm)"))
-        if self.points not in ("up", "down"):
-            raise InputError(Problem("cone points", self.points, "'up' or 'down'"))
-
-    def half_extents(self):
-        return (0.5 * self.base_diameter_nm, 0.5 * self.base_diameter_nm, 0.5 * self.height_nm)
-
-    def _profile(self) -> tuple[float, float, float]:
-        """Half opening angle, height of the ball's centre and of the sharp apex above the base.
-
-        base radius R = (H - r) tan a + r/cos a, solved for a.
-        """
-        big, tall, r = 0.5 * self.base_diameter_nm, self.height_nm - self.tip_radius_nm, self.tip_radius_nm
-        angle = math.acos(r / math.hypot(big, tall)) - math.atan2(tall, big)
-        return angle, tall, tall + r / math.sin(angle)
-
-    def _chord(self, x, y):
-        import numpy as np
-
-        angle, centre, apex = self._profile()
-        rho = np.hypot(x, y)
-        r = self.tip_radius_nm
-        side = apex - rho / math.tan(angle)
-        ball = centre + np.sqrt(np.maximum(r * r - rho * rho, 0.0))
-        top = np.where(rho <= r * math.cos(angle), ball, side) - 0.5 * self.height_nm
-        hit = rho <= 0.5 * self.base_diameter_nm
-        low, high = np.where(hit, -0.5 * self.height_nm, 1.0), np.where(hit, top, -1.0)
-        return (low, high) if self.points == "up" else (np.where(hit, -top, 1.0), np.where(hit, 0.5 * self.height_nm, -1.0))
-
-    def _distance(self, points):
-        """Largest of the distances from base plane, side and tip: exact but outside of the base's rim, where it is a lower bound."""
-        import numpy as np
-
-        angle, centre, apex = self._profile()
-        rho = np.hypot(points[:, 0], points[:, 1])
-        z = (points[:, 2] if self.points == "up" else -points[:, 2]) + 0.5 * self.height_nm
-        side = rho * math.cos(angle) - (apex - z) * math.sin(angle)
-        # beyond the tangent circle the nearest surface is the ball's
-        above = (z - centre) * math.cos(angle) - rho * math.sin(angle) > 0.0
-        tip = np.hypot(rho, z - centre) - self.tip_radius_nm
-        return np.maximum(np.where(above, tip, side), -z)
-
-    @property
-    def volume_nm3(self) -> float:
-        angle, centre, apex = self._profile()
-        big, r = 0.5 * self.base_diameter_nm, self.tip_radius_nm
-        circle, height = r * math.cos(angle), centre + r * math.sin(angle)
-        frustum = math.pi / 3.0 * height * (big * big + big * circle + circle * circle)
-        cap = r - r * math.sin(angle)
-        return frustum + math.pi * cap * cap * (3.0 * r - cap) / 3.0
-
-    def grown(self, thickness_nm):
-        """Side, base plane and tip moved outward by the thickness; the base's rim stays sharp."""
-        angle, *_ = self._profile()
-        base = 0.5 * self.base_diameter_nm + thickness_nm * (math.tan(angle) + 1.0 / math.cos(angle))
-        return replace(
-            self,
-            base_diameter_nm=2.0 * base,
-            height_nm=self.height_nm + 2.0 * thickness_nm,
-            tip_radius_nm=self.tip_radius_nm + thickness_nm,
-        )
-
-
-def _check_radius(shape: Particle, name: str, radius: float, most: float, words: str) -> None:
-    if not 0.0 <= radius <= most * (1.0 + 1e-12):
-        raise InputError(Problem(f"{shape.word} {name}", radius, f"0 up to {words} ({most:g} nm)"))
-
-
-def _ball_chord(radius: float, rho2):
-    return _raised(0.0, radius, rho2)
+    def grown(self, thickness_nm, **place):
+        return self._resized(place, diameter_nm=self.diameter_nm + 2.0 * thickness_nm, length_nm=self.length_nm + 2.0 * thickness_nm)
 
 
 def _raised(core: float, radius: float, square):

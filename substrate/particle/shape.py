@@ -1,8 +1,9 @@
 """All shapes by the user's word."""
 
+from substrate.particle.cone import Cone
 from substrate.particle.composite import Shell, Union
 from substrate.particle.placement import Particle
-from substrate.particle.primitives import Box, Cone, Disc, Ellipsoid, Rod, Sphere
+from substrate.particle.primitives import Box, Disc, Ellipsoid, Rod, Sphere
 
 SHAPES: dict[str, type[Particle]] = {
     "sphere": Sphere,
