@@ -9,6 +9,8 @@ from html import escape
 from substrate.constants import DOUBTFUL_FILM_NM, TWO_PI
 from substrate.errors import InputError, Problem
 
+NEGLIGIBLE_LOSS = 1e-6  # k/n: the absorption length is more than 10^5 wavelengths, longer than any sample
+
 
 @dataclass(frozen=True)
 class Film:
@@ -28,7 +30,7 @@ class Stack:
     """A stack of flat layers, listed from the top down; z = 0 is its first interface, the host is above.
 
     host: lossless medium above (the particles and emitters are in it).  films: from the top down, may be empty.
-    base: half-space below.  Materials are built-in names, numbers, "1.5+0.1i", table files or Material objects.
+    base: half-space below.  A film or base with k below 1e-6 n counts as lossless: its light is far-field or guided light.  Materials are built-in names, numbers, "1.5+0.1i", table files or Material objects.
     """
 
     host: object = "air"
@@ -59,7 +61,7 @@ class Stack:
                     "An absorbing host has no incident irradiance and no host decay rate to refer to; give its real index as a number.",
                 )
             )
-        index = (complex(index[0].real), *index[1:])
+        index = (complex(index[0].real), *(complex(n.real) if n.imag < NEGLIGIBLE_LOSS * n.real else n for n in index[1:]))
         return Layers(float(wavelength_nm), index, tuple(float(film.thickness_nm) for film in self.films))
 
     def _repr_html_(self) -> str:

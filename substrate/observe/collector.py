@@ -68,7 +68,7 @@ class Collector:
 
     def describe(self) -> str:
         """The window in a few words, for definitions."""
-        if self.na is not None:
-            return f"NA {self.na:g} {self.side}"
         azimuth = "all azimuths" if self.azimuth_deg is None else f"azimuth {self.azimuth_deg[0]:g} to {self.azimuth_deg[1]:g} deg"
+        if self.na is not None:
+            return f"NA {self.na:g} {self.side}" + ("" if self.azimuth_deg is None else f", {azimuth}")
         return f"polar angle {self.polar_deg[0]:g} to {self.polar_deg[1]:g} deg, {azimuth}"

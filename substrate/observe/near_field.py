@@ -122,8 +122,14 @@ def total_field(
 def _inner(solution: Solution, points: np.ndarray) -> np.ndarray:
     from scipy.spatial import cKDTree
 
-    _, row = cKDTree(solution.problem.cells.centers_nm).query(points)
-    return solution.problem.polarizability.inner_field(solution.dipoles)[row]
+    problem = solution.problem
+    _, row = cKDTree(problem.cells.centers_nm).query(points)
+    field = problem.polarizability.inner_field(solution.dipoles)[row]
+    like_host = problem.polarizability.inverse_chi_across[row] == 0.0
+    if like_host.any():  # no dipole to tell the field from: it is what excitation and the other cells make there
+        reached = solution.excitation + problem.interaction.apply(solution.dipoles)
+        field[like_host] = reached[row[like_host]]
+    return field
 
 
 def _add_near(added: np.ndarray, points: np.ndarray, solution: Solution, filled: FilledParts) -> None:

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from substrate.constants import DOUBTFUL_GAP_NM, SMALLEST_GAP_NM
 from substrate.errors import InputError, NotConverged
 from substrate.errors import Problem as Fault
 from substrate.green.far_field import DipoleSet
@@ -18,7 +19,7 @@ from substrate.observe.near_field import FilledParts, emitter_coupling
 from substrate.observe.power import delivered, guided, pattern, radiated_down, radiated_up
 from substrate.quantity import Quantity, html_table, text_table
 from substrate.question.grids import Grid, cautions, grids, tell, viewing_table
-from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, materials_of, plan_grids
+from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, doubts, materials_of, plan_grids, unbalanced
 from substrate.question.scatter import collected_power, collector_windows, stack_share
 from substrate.solve.krylov import SolveReport
 from substrate.solve.problem import Solution
@@ -26,6 +27,7 @@ from substrate.source.emitter import Emitter
 
 # The emitter sees near cells spread over their filled part, the far field sees their centres: up to 1.5e-3 at 16 cells across, measured.
 _CELL_CLOSURE = 2e-3
+_CLOSURE = 1e-6  # of the bare stack: adaptive quadrature leaves 1e-9
 _CHANNELS = ("total", "up", "down", "guided", "particle", "stack")
 _DEFINITIONS = {
     "total": "total decay-rate factor (Purcell): power of the emitter over that of the same emitter in the unbounded host",
@@ -105,11 +107,15 @@ def emit(
     """
     layers = stack.at(emitter.wavelength_nm)
     windows = collector_windows(collectors, layers)
+    near = _surface_cautions(layers, emitter)
     if not particles:
         values, error = _plane_stack(layers, emitter, windows)
+        missing = unbalanced(values["balance"], _CLOSURE)
+        if missing:
+            error += abs(values["balance"])
         series = Series((0.0,), {name: (value,) for name, value in values.items()}, 0.0, 0.0)
         sources = tuple((_point(emitter, moment), weight) for moment, weight in emitter.moments())
-        return _answer(series, emitter, windows, layers, sources, (), list(stack.cautions()), "exact, plane stack", error)
+        return _answer(series, emitter, windows, layers, sources, (), [*stack.cautions(), *near, *missing], "exact, plane stack", error)
     distance = _distance(particles, emitter)
     plan = plan_grids(particles, layers, accuracy, cell_nm, quick, distance)
     rows, sizes, reports, sources, last, failure = [], [], [], (), [], None
@@ -129,10 +135,11 @@ def emit(
     table_error = max((s.problem.table.error for s in last if s.problem.table is not None), default=0.0)
     residual = max(report.residual for report in reports)
     series = Series(tuple(sizes), {name: tuple(row[name] for row in rows) for name in rows[0]}, residual, table_error)
-    doubts = _distance_cautions(distance, sizes[-1], particles, layers)
-    warnings = cautions(stack, particles) + doubts
+    unresolved = _distance_cautions(distance, sizes[-1], particles, layers)
+    stated = residual + table_error + _CELL_CLOSURE
+    warnings = [*cautions(stack, particles), *near, *unresolved, *doubts(plan, quick, series.values["balance"][-1], stated)]
     method = f"coupled dipoles, {len(sizes)} grid{'s' if len(sizes) > 1 else ''}, finest cell {sizes[-1]:.3g} nm"
-    out = _answer(series, emitter, windows, layers, sources, reports, warnings, method, None, resolved=not doubts)
+    out = _answer(series, emitter, windows, layers, sources, reports, warnings, method, None, resolved=not unresolved)
     if failure is not None:
         raise NotConverged(str(failure), best=out, report=failure.report)
     return out
@@ -160,6 +167,17 @@ def _distance(particles: Sequence, emitter: Emitter) -> float:
             )
         )
     return distance
+
+
+def _surface_cautions(layers: Layers, emitter: Emitter) -> list[str]:
+    """Below 0.5 nm over an absorbing medium local optics has no meaning (InputError); below 1 nm over any it is doubtful."""
+    height = emitter.position_nm[2]
+    if height < SMALLEST_GAP_NM and layers.index[1].imag > 0.0:
+        allowed = f"z of at least {SMALLEST_GAP_NM} nm over an absorbing medium"
+        raise InputError(Fault("emitter position_nm", emitter.position_nm, allowed, "Nearer than that local bulk optics has no meaning."))
+    if height < DOUBTFUL_GAP_NM:
+        return [f"the emitter lies {height:.3g} nm above the surface: below {DOUBTFUL_GAP_NM:g} nm local bulk optics is doubtful"]
+    return []
 
 
 def _plane_stack(layers: Layers, emitter: Emitter, windows: dict) -> tuple[dict[str, float], float]:

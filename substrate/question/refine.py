@@ -16,6 +16,7 @@ from substrate.errors import InputError, Problem
 from substrate.quantity import Quantity
 
 GRIDS = 9
+FEWEST_ACROSS = 8.0  # with coarser finest grids bars were seen not to hold: none is given
 MOST_BOX_CELLS = 6_000_000
 COMFORTABLE_BOX_CELLS = 400_000
 _SECONDS_PER_CELL = 6e-7  # of one product in single precision, per box cell, on two cores: for estimates only
@@ -88,6 +89,8 @@ def plan_grids(particles: Sequence, layers, accuracy: float, cell_nm: float | No
     if cell_nm is not None and not 0.0 < cell_nm < math.inf:
         raise InputError(Problem("cell_nm", cell_nm, "a length above 0"))
     extent = reference_extent_nm(particles)
+    if cell_nm is not None and cell_nm > extent:
+        raise InputError(Problem("cell_nm", cell_nm, f"at most the smallest extent of the particles ({extent:g} nm)", "Take eight cells across it or more."))
     index = max(abs(complex(material(spec).index(layers.wavelength_nm))) for spec in materials_of(particles))
     contrast = index / layers.index[0].real
     if cell_nm is not None:
@@ -102,7 +105,7 @@ def plan_grids(particles: Sequence, layers, accuracy: float, cell_nm: float | No
         finest = _comfortable(particles, extent, float(math.ceil(finest)), contrast * layers.k_host * extent)
     _check_size(particles, extent / finest)
     tolerance = solver_tolerance(accuracy, contrast)
-    if quick:
+    if quick or finest < FEWEST_ACROSS:
         return GridPlan(extent, (finest,), tolerance)
     if cell_nm is None and finest >= 16.0:
         across = sorted({round(finest * (0.5 + 0.5 * i / (GRIDS - 1))) for i in range(GRIDS)})
@@ -194,6 +197,21 @@ def _products(spec, layers) -> float:
     if eps.real < 0.0:
         return min(1500.0, 40.0 + 5.8 / max(abs((1.0 / (eps - 1.0)).imag), 1e-4))
     return 5.0 + 3.0 * abs(eps) ** 0.75
+
+
+def doubts(plan: GridPlan, quick: bool, balance: float, stated: float) -> list[str]:
+    """Sentences about a grid too coarse for a bar, and about a balance that does not close to ten times what was stated."""
+    found = []
+    if not quick and plan.cells_across[-1] < FEWEST_ACROSS:
+        found.append(f"only {plan.cells_across[-1]:.3g} cells across the smallest extent: no bars are given below {FEWEST_ACROSS:g}")
+    return found + unbalanced(balance, 10.0 * stated)
+
+
+def unbalanced(balance: float, limit: float) -> list[str]:
+    """A sentence if the power balance misses more than `limit` of the whole."""
+    if abs(balance) <= limit:
+        return []
+    return [f"the power balance misses {100.0 * balance:.2g} % of the whole: a channel is wrong or missing, do not rely on the shares"]
 
 
 def extrapolate(cell_nm: Sequence[float], values: Sequence[float]) -> Convergence:

@@ -16,7 +16,7 @@ from substrate.observe.near_field import FilledParts, total_field
 from substrate.observe.power import guided, pattern, radiated_down, radiated_up
 from substrate.quantity import Quantity, html_table, text_table
 from substrate.question.grids import Grid, cautions, grids, tell, viewing_table
-from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, plan_grids
+from substrate.question.refine import Convergence, Progress, ProgressEvent, Series, doubts, plan_grids
 from substrate.solve.krylov import SolveReport
 from substrate.solve.problem import Solution
 from substrate.source.plane_wave import PlaneWave, StackWave
@@ -161,7 +161,8 @@ def scatter(
         max(report.residual for report in reports),
         0.0 if table is None else table.error,
     )
-    out = _answer(series, windows, spots, layers, waves, finest, filled, reports, cautions(stack, particles), plan)
+    warnings = cautions(stack, particles) + doubts(plan, quick, series.values["balance"][-1], series.residual + series.table_error)
+    out = _answer(series, windows, spots, layers, waves, finest, filled, reports, warnings, plan)
     if failure is not None:
         raise NotConverged(str(failure), best=out, report=failure.report)
     return out

@@ -32,3 +32,13 @@ def test_residues_of_a_lossless_stack_are_real_and_positive():
 def test_no_modes_without_a_film_of_higher_index():
     assert guided_modes(Layers(633.0, (1.0, 1.5))) == ()
     assert guided_modes(Layers(633.0, (1.0, 1.4, 1.5), (500.0,))) == ()
+
+
+def test_pairs_of_modes_of_twin_guides_are_both_found():
+    """Two equal guides far apart: even and odd modes split by e^(-2 g gap), closer than any sampling of the dispersion function."""
+    for gap, split in ((500.0, 1e-3), (1000.0, 3e-5)):
+        modes = guided_modes(Layers(600.0, (1.45, 2.0, 1.45, 2.0, 1.45), (200.0, gap, 200.0)))
+        te = [mode for mode in modes if mode.polarization == "s"]
+        assert len(te) == 2 and len(modes) == 4
+        assert 0.0 < te[0].index - te[1].index < split
+        assert all(mode.residue.real > 0.0 for mode in modes)

@@ -134,3 +134,45 @@ def test_progress_runs_from_nothing_to_all():
     sb.scatter(STACK, [BALL], LIGHT, cell_nm=16.0, progress=events.append)
     done = [event.done for event in events]
     assert done == sorted(done) and done[-1] == 1.0 and {"meshing", "solving", "done"} == {event.stage for event in events}
+
+
+@pytest.mark.parametrize("gap", [500.0, 1000.0])
+def test_twin_guides_close_the_balance(gap):
+    stack = sb.Stack(1.45, [sb.Film(2.0, 200.0), sb.Film(1.45, gap), sb.Film(2.0, 200.0)], 1.45)
+    out = sb.emit(stack, [], sb.Emitter((0, 0, 20), 600.0, "isotropic"))
+    assert abs(out.balance.value) < 1e-7 and out.warnings == ()  # residues of poles 1e-5 apart
+
+
+def test_a_balance_that_does_not_close_is_told_and_widens_the_bars():
+    """Twin guides so far apart that their modes cannot be told apart in double precision: the power that is missing is named."""
+    stack = sb.Stack(1.45, [sb.Film(2.0, 200.0), sb.Film(1.45, 3000.0), sb.Film(2.0, 200.0)], 1.45)
+    out = sb.emit(stack, [], sb.Emitter((0, 0, 20), 600.0, "isotropic"))
+    assert abs(out.balance.value) > 1e-6 and any("power balance misses" in text for text in out.warnings)
+    assert out.up.error > 1e-3 * out.up.value
+
+
+def test_loss_too_small_to_matter_leaves_guided_and_downward_light():
+    """k = 1e-8 in film or base: the same channels as without any."""
+    emitter = sb.Emitter((0, 0, 20), 600.0, "isotropic")
+    clean = sb.emit(sb.Stack(1.0, [sb.Film(2.0, 200.0)], 1.45), [], emitter)
+    tiny = sb.emit(sb.Stack(1.0, [sb.Film(2.0 + 1e-8j, 200.0)], 1.45 + 1e-8j), [], emitter)
+    assert tiny.guided.value == clean.guided.value and tiny.down.value == clean.down.value > 0.0
+
+
+def test_field_in_the_hollow_of_a_shell():
+    """A core of exactly the host's index has no dipoles; its field is that of a core of nearly that index."""
+    def centre(core):
+        body = sb.Shell(around=sb.Sphere(material=core, diameter_nm=60.0), material=1.5, thickness_nm=10.0)
+        return sb.scatter(sb.Stack(1.0, [], 1.5), [body], sb.PlaneWave(600.0), spots_nm=[(0, 0, 40)], quick=True, cell_nm=5.0).spots[0].value
+
+    assert centre(1.0) == pytest.approx(centre(1.0001), rel=2e-3) and centre(1.0) > 0.1
+
+
+def test_grids_too_coarse_for_bars_and_emitters_too_near_the_surface():
+    coarse = sb.scatter(STACK, [BALL], LIGHT, cell_nm=16.0)
+    assert coarse.work.error is None and any("no bars are given" in text for text in coarse.warnings)
+    with pytest.raises(sb.InputError, match="at most the smallest extent"):
+        sb.scatter(STACK, [BALL], LIGHT, cell_nm=100.0)
+    with pytest.raises(sb.InputError, match="at least 0.5 nm over an absorbing"):
+        sb.emit(sb.Stack("air", [], "gold"), [], sb.Emitter((0, 0, 0.3), 600.0))
+    assert any("local bulk optics" in text for text in sb.emit(STACK, [], sb.Emitter((0, 0, 0.8), 600.0)).warnings)
